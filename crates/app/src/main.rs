@@ -1,0 +1,3 @@
+//! The `gaussgap` binary.
+
+fn main() {}

@@ -1,0 +1,1 @@
+//! Pages, reports and curves of an assessment.

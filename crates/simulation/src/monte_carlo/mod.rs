@@ -1,0 +1,1 @@
+//! Monte Carlo: standardized sums and studentized statistics.

@@ -1,0 +1,1 @@
+//! Special functions at full double accuracy, tails included.
