@@ -21,8 +21,7 @@ impl<'a> Checks<'a> {
 
     /// Reports a problem of the parameter `name` (of the law itself if `name` is empty).
     pub(crate) fn problem(&mut self, name: &str, message: impl Into<String>) {
-        let pointer =
-            if name.is_empty() { self.pointer.clone() } else { format!("{}/{name}", self.pointer) };
+        let pointer = if name.is_empty() { self.pointer.clone() } else { format!("{}/{name}", self.pointer) };
         self.problems.push(LawProblem { pointer, message: message.into() });
     }
 

@@ -21,7 +21,23 @@ pub struct StandardMoments {
 impl StandardMoments {
     /// Moments that all exist.
     pub const fn finite(mean: f64, sd: f64, skewness: f64, excess_kurtosis: f64) -> Self {
-        Self { mean: Some(mean), sd: Some(sd), skewness: Some(skewness), excess_kurtosis: Some(excess_kurtosis) }
+        Self {
+            mean: Some(mean),
+            sd: Some(sd),
+            skewness: Some(skewness),
+            excess_kurtosis: Some(excess_kurtosis),
+        }
+    }
+
+    /// The moments of add + multiply·X.
+    pub fn image(self, add: f64, multiply: f64) -> Self {
+        Self {
+            mean: self.mean.map(|mean| add + multiply * mean),
+            sd: self.sd.map(|sd| multiply.abs() * sd),
+            // + 0.0 keeps a skewness of −0 out.
+            skewness: self.skewness.map(|skewness| multiply.signum() * skewness + 0.0),
+            excess_kurtosis: self.excess_kurtosis,
+        }
     }
 }
 

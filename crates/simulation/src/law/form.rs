@@ -1,6 +1,7 @@
 //! The normal form while it is being built, and the operations on laws that stay inside it.
 
 use super::checks::{compensated_sum, shares};
+use super::density::StandardMoments;
 use super::opaque::{Opaque, OpaqueLaw};
 use super::{Atom, ClosedFamily, ClosedForm, Piece};
 use std::sync::Arc;
@@ -16,6 +17,8 @@ pub(crate) struct Form {
     pub(crate) pieces: Vec<Piece>,
     pub(crate) opaque: Vec<Opaque>,
     pub(crate) closed_form: Option<ClosedForm>,
+    /// Moments known better than the atoms give them.
+    pub(crate) exact: Option<StandardMoments>,
     pub(crate) warnings: Vec<String>,
 }
 
@@ -46,6 +49,11 @@ impl Form {
     /// The same with its closed form stated.
     pub(crate) fn with_closed_form(self, family: ClosedFamily, add: f64, multiply: f64) -> Self {
         Self { closed_form: Some(ClosedForm { family, add, multiply }), ..self }
+    }
+
+    /// The same with its moments stated.
+    pub(crate) fn with_moments(self, moments: StandardMoments) -> Self {
+        Self { exact: Some(moments), ..self }
     }
 
     /// The union with normalised weights.
@@ -103,6 +111,7 @@ impl Form {
                 multiply: multiply * closed.multiply,
                 ..closed
             }),
+            exact: self.exact.map(|moments| moments.image(add, multiply)),
             warnings: self.warnings,
         }
     }
@@ -145,9 +154,8 @@ impl Form {
         }
         self.refuse_opaque("restrict")?;
         let mut inside = self.clipped(low, high);
-        let total = compensated_sum(
-            inside.atoms.iter().map(|a| a.mass).chain(inside.pieces.iter().map(Piece::mass)),
-        );
+        let total =
+            compensated_sum(inside.atoms.iter().map(|a| a.mass).chain(inside.pieces.iter().map(Piece::mass)));
         if total.is_nan() || total < 1e-300 {
             return Err(format!("nothing of the law lies inside the limits (probability {total:e})"));
         }
@@ -167,7 +175,9 @@ impl Form {
         let mut cells: std::collections::BTreeMap<i64, f64> = std::collections::BTreeMap::new();
         let mut missing_mass = self.missing_mass;
         let too_many = || {
-            format!("the rounded law would have more than {MOST_ATOMS} values; take a larger step or cap it first")
+            format!(
+                "the rounded law would have more than {MOST_ATOMS} values; take a larger step or cap it first"
+            )
         };
         for atom in &self.atoms {
             let k = nearest(atom.value);
@@ -178,7 +188,8 @@ impl Form {
         }
         for piece in &self.pieces {
             let reach = |end: f64, level_end: f64| if end.is_finite() { end } else { level_end };
-            let (far_low, far_high) = (piece.conditional_quantile(1e-32), piece.conditional_quantile_above(1e-32));
+            let (far_low, far_high) =
+                (piece.conditional_quantile(1e-32), piece.conditional_quantile_above(1e-32));
             let (far_low, far_high) = if piece.multiply > 0.0 {
                 (piece.image(far_low), piece.image(far_high))
             } else {
@@ -239,9 +250,7 @@ impl Form {
 
     /// What lies inside the limits, not normalised.
     fn clipped(&self, low: f64, high: f64) -> Self {
-        let inside = |value: f64| {
-            (value >= low || same(value, low)) && (value <= high || same(value, high))
-        };
+        let inside = |value: f64| (value >= low || same(value, low)) && (value <= high || same(value, high));
         Self {
             atoms: self.atoms.iter().copied().filter(|a| inside(a.value)).collect(),
             missing_mass: self.missing_mass,
@@ -261,9 +270,7 @@ impl Form {
     fn unfolded(&self, piece: &Piece) -> Vec<Piece> {
         match piece.density.folded() {
             Some(half) if piece.is_whole() => [1.0, -1.0]
-                .map(|sign| {
-                    Piece::whole(half.clone(), 0.5 * piece.factor, piece.add, sign * piece.multiply)
-                })
+                .map(|sign| Piece::whole(half.clone(), 0.5 * piece.factor, piece.add, sign * piece.multiply))
                 .to_vec(),
             _ => vec![piece.clone()],
         }

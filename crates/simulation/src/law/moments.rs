@@ -28,18 +28,19 @@ struct Component {
 /// graded panels).
 pub(crate) fn of_form(form: &Form) -> LawMoments {
     let constant = |value| StandardMoments::finite(value, 0.0, 0.0, -3.0);
-    let mut components: Vec<Component> = form
-        .atoms
-        .iter()
-        .map(|atom| Component { mass: atom.mass, moments: constant(atom.value) })
-        .collect();
-    components.extend(form.pieces.iter().map(|piece| Component { mass: piece.mass(), moments: of_piece(piece) }));
+    let mut components: Vec<Component> =
+        form.atoms.iter().map(|atom| Component { mass: atom.mass, moments: constant(atom.value) }).collect();
+    components
+        .extend(form.pieces.iter().map(|piece| Component { mass: piece.mass(), moments: of_piece(piece) }));
     components.extend(form.opaque.iter().map(|opaque| Component {
         mass: opaque.weight,
-        moments: image(opaque.law.moments(), opaque.add, opaque.multiply),
+        moments: opaque.law.moments().image(opaque.add, opaque.multiply),
     }));
-    let standard =
-        if let [only] = components[..] { only.moments } else { combine(&components) };
+    let standard = match (form.exact, &components[..]) {
+        (Some(exact), _) => exact,
+        (None, [only]) => only.moments,
+        (None, several) => combine(several),
+    };
     let third_absolute_ratio = match standard {
         StandardMoments { mean: Some(mean), sd: Some(sd), .. }
             if sd > 0.0 && form.opaque.is_empty() && has_moment(form, 3.0) =>
@@ -71,16 +72,6 @@ fn piece_tail_index(piece: &Piece) -> f64 {
     upper.min(lower)
 }
 
-/// Moments of add + multiply·Y.
-fn image(moments: StandardMoments, add: f64, multiply: f64) -> StandardMoments {
-    StandardMoments {
-        mean: moments.mean.map(|mean| add + multiply * mean),
-        sd: moments.sd.map(|sd| multiply.abs() * sd),
-        skewness: moments.skewness.map(|skewness| multiply.signum() * skewness + 0.0),
-        excess_kurtosis: moments.excess_kurtosis,
-    }
-}
-
 /// Moments of a mixture of components about their common mean.
 fn combine(components: &[Component]) -> StandardMoments {
     let total = compensated_sum(components.iter().map(|c| c.mass));
@@ -102,8 +93,7 @@ fn combine(components: &[Component]) -> StandardMoments {
         return none;
     }
     let sd_of = |c: &Component| c.moments.sd.unwrap_or(0.0);
-    let unit =
-        components.iter().map(|c| (mean_of(c) - mean).abs().max(sd_of(c))).fold(0.0, f64::max);
+    let unit = components.iter().map(|c| (mean_of(c) - mean).abs().max(sd_of(c))).fold(0.0, f64::max);
     if unit == 0.0 {
         return StandardMoments::finite(mean, 0.0, 0.0, -3.0);
     }
@@ -141,7 +131,7 @@ fn of_piece(piece: &Piece) -> StandardMoments {
     if piece.is_whole()
         && let Some(moments) = piece.density.standard_moments()
     {
-        return image(moments, piece.add, piece.multiply);
+        return moments.image(piece.add, piece.multiply);
     }
     let index = piece_tail_index(piece);
     let mut nodes = Nodes::of(piece);
@@ -158,7 +148,7 @@ fn of_piece(piece: &Piece) -> StandardMoments {
         skewness: sd.zip(powers[1]).map(|(sd, third)| third / (sd * sd * sd)),
         excess_kurtosis: sd.zip(powers[2]).map(|(sd, fourth)| fourth / (sd * sd * sd * sd) - 3.0),
     };
-    image(moments, piece.add, piece.multiply)
+    moments.image(piece.add, piece.multiply)
 }
 
 /// Quadrature nodes (y, probability) of one piece in family units, its mass normalised to 1.
@@ -180,11 +170,11 @@ impl Nodes {
         let heavy_up = piece.high == f64::INFINITY && f.upper_tail_index() < f64::INFINITY;
         let heavy_down = piece.low == f64::NEG_INFINITY && f.lower_tail_index() < f64::INFINITY;
         if heavy_up && let Some(&last) = ends.last() {
-            extend(&mut ends, last.abs().max(1.0), FAR * last.abs().max(1.0), 1.0);
+            extend(&mut ends, last.abs().max(1.0));
         }
         if heavy_down && let Some(&first) = ends.first() {
             let mut mirrored: Vec<f64> = ends.iter().rev().map(|y| -y).collect();
-            extend(&mut mirrored, first.abs().max(1.0), FAR * first.abs().max(1.0), 1.0);
+            extend(&mut mirrored, first.abs().max(1.0));
             ends = mirrored.into_iter().rev().map(|y| -y).collect();
         }
         let mut points = Vec::with_capacity(20 * ends.len());
@@ -268,10 +258,10 @@ impl Nodes {
     }
 }
 
-/// Appends points growing by a factor of 3 from `from` to `to` beyond the last of `points`.
-fn extend(points: &mut Vec<f64>, from: f64, to: f64, _step: f64) {
+/// Appends points growing by a factor of 3 from `from` as far as the panels go.
+fn extend(points: &mut Vec<f64>, from: f64) {
     let mut y = 3.0 * from;
-    while y < to && y < 1e290 {
+    while y < FAR * from && y < 1e290 {
         points.push(y);
         y *= 3.0;
     }
@@ -306,7 +296,5 @@ fn third_absolute(form: &Form, mean: f64, sd: f64) -> f64 {
                 + Nodes::beyond(nodes.lower, 3.0, unit))
         }))
     });
-    let sum = compensated_sum(atoms.chain(pieces));
-    // Atoms and pieces add up to 1 but for rounding and the missing mass.
-    sum
+    compensated_sum(atoms.chain(pieces))
 }

@@ -44,14 +44,22 @@ impl Opaque {
     pub(crate) fn at_or_below(&self, x: f64, strictly: bool) -> f64 {
         let y = (x - self.add) / self.multiply;
         self.weight
-            * if self.multiply > 0.0 { self.law.at_or_below(y, strictly) } else { self.law.above(y, !strictly) }
+            * if self.multiply > 0.0 {
+                self.law.at_or_below(y, strictly)
+            } else {
+                self.law.above(y, !strictly)
+            }
     }
 
     /// Share of P(X > x), or of P(X ≥ x).
     pub(crate) fn above(&self, x: f64, or_equal: bool) -> f64 {
         let y = (x - self.add) / self.multiply;
         self.weight
-            * if self.multiply > 0.0 { self.law.above(y, or_equal) } else { self.law.at_or_below(y, !or_equal) }
+            * if self.multiply > 0.0 {
+                self.law.above(y, or_equal)
+            } else {
+                self.law.at_or_below(y, !or_equal)
+            }
     }
 
     /// (upper, lower) tail index of the image.

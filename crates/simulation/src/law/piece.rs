@@ -1,8 +1,8 @@
 //! One analytic stretch of a law: masses, distribution function, quantiles and quadrature panels.
 
+use super::Piece;
 use super::density::Density;
 use super::quadrature::{LEVELS, grade_from, stretch, tidy};
-use super::Piece;
 use std::sync::Arc;
 
 impl Piece {
@@ -45,15 +45,13 @@ impl Piece {
     /// P(X ≤ x, on this piece).
     pub fn at_or_below(&self, x: f64) -> f64 {
         let y = self.clamped_preimage(x);
-        self.factor
-            * if self.multiply > 0.0 { self.between(self.low, y) } else { self.between(y, self.high) }
+        self.factor * if self.multiply > 0.0 { self.between(self.low, y) } else { self.between(y, self.high) }
     }
 
     /// P(X > x, on this piece).
     pub fn above(&self, x: f64) -> f64 {
         let y = self.clamped_preimage(x);
-        self.factor
-            * if self.multiply > 0.0 { self.between(y, self.high) } else { self.between(self.low, y) }
+        self.factor * if self.multiply > 0.0 { self.between(y, self.high) } else { self.between(self.low, y) }
     }
 
     /// Density at x, in the quantity's unit; 0 outside the piece. Finite: a singular end is answered by the
@@ -94,7 +92,13 @@ impl Piece {
     }
 
     fn quantile_or_end(&self, p: f64) -> f64 {
-        if p > 0.0 && p < 1.0 { self.density.quantile(p) } else if p <= 0.0 { self.low } else { self.high }
+        if p > 0.0 && p < 1.0 {
+            self.density.quantile(p)
+        } else if p <= 0.0 {
+            self.low
+        } else {
+            self.high
+        }
     }
 
     fn quantile_above_or_end(&self, q: f64) -> f64 {
@@ -128,11 +132,8 @@ impl Piece {
             return f.above(a);
         }
         let (below_a, above_b) = (f.at_or_below(a), f.above(b));
-        let (larger, smaller) = if below_a <= above_b {
-            (f.at_or_below(b), below_a)
-        } else {
-            (f.above(a), above_b)
-        };
+        let (larger, smaller) =
+            if below_a <= above_b { (f.at_or_below(b), below_a) } else { (f.above(a), above_b) };
         let difference = larger - smaller;
         if difference > 0.05 * larger {
             return difference;

@@ -61,9 +61,7 @@ pub(crate) fn grade_from(points: &[f64], singular: f64, ratio: f64) -> Vec<f64> 
                 // In logarithms: the quotient itself may overflow.
                 let pieces = ((to.ln() - from.ln()) / ratio.ln()).ceil().max(1.0);
                 let step = (to.ln() - from.ln()) / pieces;
-                graded.extend(
-                    (1..pieces as usize).map(|i| singular + (from.ln() + step * i as f64).exp()),
-                );
+                graded.extend((1..pieces as usize).map(|i| singular + (from.ln() + step * i as f64).exp()));
             }
         }
         graded.push(point);
@@ -80,9 +78,8 @@ pub(crate) fn tidy(mut points: Vec<f64>) -> Vec<f64> {
 }
 
 /// Probabilities at whose quantiles skeletons are laid, lower half; the upper half mirrors them.
-pub(crate) const LEVELS: [f64; 16] = [
-    1e-26, 1e-22, 1e-18, 1e-15, 1e-12, 1e-10, 1e-8, 1e-6, 1e-5, 1e-4, 1e-3, 1e-2, 0.05, 0.15, 0.3, 0.5,
-];
+pub(crate) const LEVELS: [f64; 16] =
+    [1e-26, 1e-22, 1e-18, 1e-15, 1e-12, 1e-10, 1e-8, 1e-6, 1e-5, 1e-4, 1e-3, 1e-2, 0.05, 0.15, 0.3, 0.5];
 
 /// Quantiles at [`LEVELS`] and their mirror images.
 pub(crate) fn quantile_points(lower: impl Fn(f64) -> f64, upper: impl Fn(f64) -> f64) -> Vec<f64> {

@@ -96,7 +96,8 @@ impl Density for Gamma {
         if s.im == 0.0 && s.re <= -1.0 { None } else { Some(-self.shape * complex_ln_1p(s)) }
     }
     fn skeleton(&self) -> Vec<f64> {
-        let points = quantile_points(|p| self.quantile(p).max(1e-290), |q| self.quantile_above(q).max(1e-290));
+        let points =
+            quantile_points(|p| self.quantile(p).max(1e-290), |q| self.quantile_above(q).max(1e-290));
         grade_from(&points, 0.0, 3.0)
     }
     fn lower_exponent(&self) -> f64 {

@@ -4,10 +4,10 @@
 //! 16d + 15d² + 6d³ + d⁴. Given mean m and sd s instead: log_sd² = ln(1 + (s/m)²), log_mean = ln m − log_sd²/2.
 //! Reference: J. Aitchison & J. A. C. Brown, *The Lognormal Distribution* (1957), from memory.
 
+use crate::law::Piece;
 use crate::law::checks::{Checks, show};
 use crate::law::density::{Density, StandardMoments};
 use crate::law::form::Form;
-use crate::law::Piece;
 use crate::law::quadrature::tidy;
 use crate::special;
 use num_complex::Complex64;
@@ -44,7 +44,10 @@ pub(super) fn compile(
             }
             let ratio = sd / mean;
             if !(1e-150..=1e80).contains(&ratio) {
-                checks.problem("sd", format!("must be between 1e-150 and 1e80 times the mean (got {})", show(sd)));
+                checks.problem(
+                    "sd",
+                    format!("must be between 1e-150 and 1e80 times the mean (got {})", show(sd)),
+                );
                 return None;
             }
             let variance = (ratio * ratio).ln_1p();

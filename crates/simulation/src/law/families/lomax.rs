@@ -6,10 +6,10 @@
 //! Reference: N. L. Johnson, S. Kotz & N. Balakrishnan, *Continuous Univariate Distributions* 1, ch. 20, from
 //! memory; formulas checked by quadrature in the tests.
 
+use crate::law::Piece;
 use crate::law::checks::Checks;
 use crate::law::density::{Density, StandardMoments};
 use crate::law::form::Form;
-use crate::law::Piece;
 use crate::law::quadrature::{grade_from, quantile_points};
 use crate::special::elementary::complex_ln_1p;
 use num_complex::Complex64;

@@ -1,21 +1,14 @@
 //! The families of laws, one file each, and the one list that joins them.
 
 mod bernoulli;
-mod binomial;
 mod constant;
-mod data;
 mod discrete_uniform;
 mod exponential;
 mod gamma;
-mod geometric;
-mod inverse_gaussian;
 mod lognormal;
 mod lomax;
-mod long_table;
-mod negative_binomial;
 mod normal;
 mod pareto;
-mod poisson;
 mod table;
 mod uniform;
 mod weibull;
@@ -32,13 +25,8 @@ pub(super) fn compile(spec: &LawSpec, checks: &mut Checks) -> Option<Form> {
     match spec {
         LawSpec::Constant { value } => constant::compile(*value, checks),
         LawSpec::Bernoulli { p } => bernoulli::compile(*p, checks),
-        LawSpec::Binomial { trials, p } => binomial::compile(*trials, *p, checks),
-        LawSpec::Poisson { rate } => poisson::compile(*rate, checks),
-        LawSpec::Geometric { p } => geometric::compile(*p, checks),
-        LawSpec::NegativeBinomial { size, p } => negative_binomial::compile(*size, *p, checks),
         LawSpec::DiscreteUniform { low, high } => discrete_uniform::compile(*low, *high, checks),
         LawSpec::Table { values, weights } => table::compile(values, weights, checks),
-        LawSpec::Data { values, tail, .. } => data::compile(values.as_deref(), tail.as_ref(), checks),
         LawSpec::Normal { mean, sd } => normal::compile(*mean, *sd, checks),
         LawSpec::Uniform { low, high } => uniform::compile(*low, *high, checks),
         LawSpec::Exponential { mean } => exponential::compile(*mean, checks),
@@ -49,7 +37,6 @@ pub(super) fn compile(spec: &LawSpec, checks: &mut Checks) -> Option<Form> {
         }
         LawSpec::Lomax { shape, scale } => lomax::compile(*shape, *scale, checks),
         LawSpec::Pareto { shape, minimum } => pareto::compile(*shape, *minimum, checks),
-        LawSpec::InverseGaussian { mean, shape } => inverse_gaussian::compile(*mean, *shape, checks),
         _ => None,
     }
 }
@@ -58,4 +45,9 @@ pub(super) fn compile(spec: &LawSpec, checks: &mut Checks) -> Option<Form> {
 fn by_inversion(density: &dyn Density, random: &mut dyn rand::Rng) -> f64 {
     let u: f64 = random.sample(rand::distr::Open01);
     if u <= 0.5 { density.quantile(u) } else { density.quantile_above(1.0 - u) }
+}
+
+/// Moments of the Bernoulli law, whose affine images are all laws on two values.
+pub(super) fn bernoulli_moments(p: f64) -> super::density::StandardMoments {
+    bernoulli::moments(p)
 }

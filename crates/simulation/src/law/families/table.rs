@@ -16,7 +16,11 @@ pub(super) fn compile(values: &[f64], weights: &[f64], checks: &mut Checks) -> O
     if values.len() != weights.len() {
         checks.problem(
             "weights",
-            format!("must hold as many weights as there are values, {} (got {})", values.len(), weights.len()),
+            format!(
+                "must hold as many weights as there are values, {} (got {})",
+                values.len(),
+                weights.len()
+            ),
         );
         return None;
     }
@@ -25,8 +29,7 @@ pub(super) fn compile(values: &[f64], weights: &[f64], checks: &mut Checks) -> O
         good &= checks.finite(&format!("values/{index}"), value);
     }
     good.then(|| {
-        let atoms =
-            values.iter().zip(shares(weights)).map(|(&value, mass)| Atom { value, mass }).collect();
+        let atoms = values.iter().zip(shares(weights)).map(|(&value, mass)| Atom { value, mass }).collect();
         Form::atoms(atoms, 0.0)
     })
 }

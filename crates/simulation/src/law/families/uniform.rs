@@ -2,10 +2,10 @@
 //!
 //! Moments: mean 1/2, variance 1/12, skewness 0, excess kurtosis −6/5.
 
+use crate::law::Piece;
 use crate::law::checks::Checks;
 use crate::law::density::{Density, StandardMoments};
 use crate::law::form::Form;
-use crate::law::Piece;
 use crate::special::elementary::complex_exp_m1;
 use num_complex::Complex64;
 use rand::RngExt;
@@ -60,11 +60,7 @@ impl Density for Uniform {
             return Some(Complex64::new(0.0, 0.0));
         }
         // For Re s < 0 take e^{−s} out so that nothing overflows.
-        Some(if s.re >= 0.0 {
-            (-complex_exp_m1(-s) / s).ln()
-        } else {
-            -s + (complex_exp_m1(s) / s).ln()
-        })
+        Some(if s.re >= 0.0 { (-complex_exp_m1(-s) / s).ln() } else { -s + (complex_exp_m1(s) / s).ln() })
     }
     fn skeleton(&self) -> Vec<f64> {
         vec![0.0, 1.0]
