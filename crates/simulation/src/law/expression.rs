@@ -338,7 +338,10 @@ mod tests {
             ("2x", "expected an operator at character 2 (got `x`)"),
             ("exp(-x", "expected `)` at the end"),
             ("sin x", "expected `(` after `sin` at character 5 (got `x`)"),
-            ("y+1", "unknown name at character 1: expected x, pi, e, exp, ln, log, sqrt, abs, sin or cos (got `y`)"),
+            (
+                "y+1",
+                "unknown name at character 1: expected x, pi, e, exp, ln, log, sqrt, abs, sin or cos (got `y`)",
+            ),
             ("1.2.3", "expected a number at character 1 (got `1.2.3`)"),
             ("", "expected a number, `x`, a function or `(` at the end"),
         ] {

@@ -134,7 +134,11 @@ impl Formula {
         let mut x = 0.5 * a + 0.5 * b;
         for _ in 0..80 {
             let off = excess(x);
-            if off > 0.0 { b = x } else { a = x }
+            if off > 0.0 {
+                b = x
+            } else {
+                a = x
+            }
             let newton = x - off / self.value(x);
             let next = if newton > a && newton < b { newton } else { 0.5 * a + 0.5 * b };
             if next == x || b - a <= f64::EPSILON * a.abs().max(b.abs()) {
@@ -158,7 +162,8 @@ impl Formula {
 }
 
 fn infinite_mass() -> String {
-    "has infinite mass, or a singular end that cannot be resolved there (move a singular end to x = 0)".to_owned()
+    "has infinite mass, or a singular end that cannot be resolved there (move a singular end to x = 0)"
+        .to_owned()
 }
 
 /// Whether all nodes of the rule on [a, b] have a usable value; the largest of them.
@@ -168,7 +173,11 @@ fn check_values(expression: &Expression, a: f64, b: f64) -> Result<f64, String> 
         let x = 0.5 * a + 0.5 * b + 0.5 * (b - a) * node;
         let value = expression.at(x);
         if !value.is_finite() {
-            return Err(format!("must be a finite number everywhere (got {} at x = {})", show(value), show(x)));
+            return Err(format!(
+                "must be a finite number everywhere (got {} at x = {})",
+                show(value),
+                show(x)
+            ));
         }
         if value < 0.0 {
             return Err(format!("must not be negative (got {} at x = {})", show(value), show(x)));

@@ -27,8 +27,11 @@ pub(super) fn compile(edges: &[f64], weights: &[f64], checks: &mut Checks) -> Op
         let place = format!("edges/{index}");
         good &= checks.finite(&place, edge);
         if index > 0 && edge <= edges[index - 1] {
-            let message =
-                format!("must be greater than the edge before, {} (got {})", show(edges[index - 1]), show(edge));
+            let message = format!(
+                "must be greater than the edge before, {} (got {})",
+                show(edges[index - 1]),
+                show(edge)
+            );
             checks.problem(&place, message);
             good = false;
         }

@@ -35,8 +35,7 @@ fn bell(z: Complex64) -> Complex64 {
 }
 
 /// Stretches on one side of the centre, short against the distance π to the poles.
-const ONE_SIDE: [f64; 14] =
-    [1.0, 2.5, 4.5, 7.0, 10.0, 14.0, 18.0, 23.0, 29.0, 36.0, 44.0, 53.0, 63.0, 75.0];
+const ONE_SIDE: [f64; 14] = [1.0, 2.5, 4.5, 7.0, 10.0, 14.0, 18.0, 23.0, 29.0, 36.0, 44.0, 53.0, 63.0, 75.0];
 
 impl Density for Logistic {
     fn name(&self) -> &'static str {

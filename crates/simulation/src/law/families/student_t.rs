@@ -49,10 +49,8 @@ pub(super) fn compile(
         skewness: when(3.0, 0.0),
         excess_kurtosis: when(4.0, 6.0 / (df - 4.0)),
     };
-    let pieces = vec![
-        Piece::whole(half.clone(), 0.5, location, -scale),
-        Piece::whole(half, 0.5, location, scale),
-    ];
+    let pieces =
+        vec![Piece::whole(half.clone(), 0.5, location, -scale), Piece::whole(half, 0.5, location, scale)];
     Some(Form::pieces(pieces).with_moments(moments.image(location, scale)))
 }
 
