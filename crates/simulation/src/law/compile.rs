@@ -210,6 +210,10 @@ pub(super) fn finish(mut form: Form) -> Result<Law, String> {
     if found.standard.mean.is_some_and(|mean| !mean.is_finite()) || sd.is_some_and(|sd| !sd.is_finite()) {
         return Err("its mean or spread is too large to be written as a number".to_owned());
     }
+    let known = [found.standard.skewness, found.standard.excess_kurtosis, found.third_absolute_ratio];
+    if known.iter().flatten().any(|value| value.is_nan()) {
+        return Err("a part of it lies too far out in a tail for double precision".to_owned());
+    }
     let constant = sd == Some(0.0);
     // Squares and cubes may leave the range of doubles where the sd does not: `Law::sd` and
     // `Law::third_absolute_ratio` stay exact.

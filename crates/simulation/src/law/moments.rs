@@ -278,7 +278,9 @@ fn third_absolute(form: &Form, mean: f64, sd: f64) -> f64 {
         let scale = piece.multiply.abs();
         // (x − mean)/sd without cancellation: from the split where it is on the piece, from the shift elsewhere.
         let shift = (piece.add - mean) / sd * piece.multiply.signum();
-        let deviation = |y: f64| if inside { (y - split) * scale / sd } else { shift + y * scale / sd };
+        let rate = scale / sd;
+        let in_sds = |y: f64| if rate.is_finite() { y * rate } else { y * scale / sd };
+        let deviation = |y: f64| if inside { in_sds(y - split) } else { shift + in_sds(y) };
         let parts: Vec<Piece> = if inside {
             vec![Piece { high: split, ..piece.clone() }, Piece { low: split, ..piece.clone() }]
         } else {
