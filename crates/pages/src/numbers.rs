@@ -48,14 +48,14 @@ pub fn whole(value: u64) -> String {
 }
 
 /// A value with its error, rounded so that the interval shown contains the interval meant: `0.9213 ± 0.0003`,
-/// `(1.20 ± 0.02)×10⁻¹⁰`. An error below a billionth of the value (or of 1, for a value that is nearly 0) is not
-/// shown: the six digits shown are right then.
+/// `(1.20 ± 0.02)×10⁻¹⁰`. An error below a ten-millionth of the value is not shown: it is smaller than a
+/// unit in the last of the six digits shown.
 pub fn figure(figure: &Figure) -> String {
     let Figure { value, error, .. } = *figure;
     if !value.is_finite() || !error.is_finite() {
         return "–".to_owned();
     }
-    if error <= 1e-9 * value.abs() || (error == 0.0) {
+    if error <= 1e-7 * value.abs() || error == 0.0 {
         return number(value, 6);
     }
     let largest = value.abs().max(error);
@@ -88,7 +88,7 @@ pub fn error_only(error: f64) -> String {
 
 /// Value and error with the same decimals; the error has two digits, rounded up, and takes in the rounding of the value.
 fn rounded(value: f64, error: f64) -> (String, String) {
-    let decimals = (1 - error.log10().floor() as i32).clamp(0, 12) as usize;
+    let decimals = (1 - (error * (1.0 + 1e-9)).log10().floor() as i32).clamp(0, 12) as usize;
     let unit = 10_f64.powi(-(decimals as i32));
     let value_text = format!("{value:.decimals$}");
     let shown: f64 = value_text.parse().unwrap_or(value);

@@ -52,7 +52,7 @@ impl Frame {
             outer.left + label_room + 8.0,
             legend_bottom + 14.0,
             outer.right - 8.0,
-            (outer.bottom - 38.0).max(legend_bottom + 40.0),
+            (outer.bottom - 40.0).max(legend_bottom + 40.0),
         );
         canvas.rect(plot, palette.panel);
         let frame = Self { plot, x, y };
@@ -68,7 +68,7 @@ impl Frame {
                 lowest = place;
             }
         }
-        let (x_ticks, x_factor) = x.ticks(((plot.width()) / 60.0).clamp(2.0, 10.0) as usize);
+        let (x_ticks, x_factor) = x.ticks((plot.width() / 50.0).clamp(2.0, 10.0) as usize);
         let mut taken = f64::NEG_INFINITY;
         for tick in &x_ticks {
             let place = frame.x_place(tick.value);
@@ -78,7 +78,7 @@ impl Frame {
             canvas.line((place, plot.top), (place, plot.bottom), palette.rule_line());
             let half = width(&tick.label, SMALL) / 2.0;
             if place - half > taken && place + half <= outer.right + 8.0 {
-                canvas.text(place, plot.bottom + 15.0, &tick.label, SMALL, palette.muted, Anchor::Middle);
+                canvas.text(place, plot.bottom + 17.0, &tick.label, SMALL, palette.muted, Anchor::Middle);
                 taken = place + half + 6.0;
             }
         }
@@ -88,7 +88,7 @@ impl Frame {
             None => spec.x_caption.to_owned(),
         };
         let caption = shortened(&caption, SMALL, plot.width(), false);
-        canvas.text((plot.left + plot.right) / 2.0, plot.bottom + 32.0, &caption, SMALL, palette.muted, Anchor::Middle);
+        canvas.text((plot.left + plot.right) / 2.0, plot.bottom + 34.0, &caption, SMALL, palette.muted, Anchor::Middle);
         frame
     }
 

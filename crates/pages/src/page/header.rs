@@ -4,7 +4,7 @@ use super::canvas::{Anchor, Canvas, Rect};
 use super::style::Stroke;
 use super::text::{Font, fitted, shortened, width};
 use crate::numbers::{figure, number, optional, whole};
-use gaussgap_conclusions::plan_sentence;
+use gaussgap_conclusions::words::plan_sentence;
 use gaussgap_conclusions::report::{Report, State};
 
 const BADGE: Font = Font::bold(17.0);

