@@ -100,7 +100,7 @@ pub struct LawProblem {
 /// A law made ready for computing. Cheap to clone.
 #[derive(Debug, Clone)]
 pub struct Law {
-    inner: Arc<LawParts>,
+    pub(crate) inner: Arc<LawParts>,
 }
 
 /// The normal form of a law.

@@ -3,6 +3,16 @@
 //! [`build`] picks the best route (closed form, lattice, inversion, simulation) and says which it took. All
 //! routes answer the same questions through [`StandardizedSum`], always in standard units z.
 
+pub mod closed_form;
+mod continuous;
+#[cfg(test)]
+mod counted_checks;
+mod counting;
+pub mod lattice;
+mod steps;
+mod supremum;
+mod twofold;
+
 use crate::figure::Figure;
 use crate::law::Law;
 use crate::work::{Cancelled, Work};
