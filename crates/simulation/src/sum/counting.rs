@@ -27,7 +27,13 @@ pub(crate) enum Counting {
 /// deviation d, so that x − m is never formed from two large numbers. Relative error a few units in the last
 /// place. With v = −d/x, x·(v − ln(1 + v)) is the same and has no cancellation.
 fn deviance(x: f64, m: f64, d: f64) -> f64 {
-    if d == 0.0 { 0.0 } else if x <= 0.0 { m } else { -x * ln_1p_minus_x(-d / x) }
+    if d == 0.0 {
+        0.0
+    } else if x <= 0.0 {
+        m
+    } else {
+        -x * ln_1p_minus_x(-d / x)
+    }
 }
 
 impl Counting {

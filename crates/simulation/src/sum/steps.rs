@@ -85,8 +85,16 @@ impl<C: Cumulative> Steps<C> {
         } else if k >= range.1 {
             Figure::bound(1.0, 0.0)
         } else {
-            self.cumulative.at_or_below(k)
+            self.with_input_error(self.cumulative.at_or_below(k), z)
         }
+    }
+
+    /// Allows for the centre: a tail probability falls by the factor e^(−h·δz) when the centre moves by δz, with a
+    /// hazard h of about |z| + 1; twice that is allowed for.
+    fn with_input_error(&self, figure: Figure, z: f64) -> Figure {
+        let shift = self.scale.center_error / self.scale.sd;
+        let tail = figure.value.min(1.0 - figure.value).max(0.0);
+        Figure { error: figure.error + 2.0 * (1.0 + z.abs()) * shift * tail, ..figure }
     }
 
     /// P(Z ≥ z), or P(Z > z) if not `inclusive`, for the unreflected sum.
@@ -99,7 +107,7 @@ impl<C: Cumulative> Steps<C> {
         } else if k <= range.0 {
             Figure::bound(1.0, 0.0)
         } else {
-            self.cumulative.at_or_above(k)
+            self.with_input_error(self.cumulative.at_or_above(k), z)
         }
     }
 
@@ -353,11 +361,6 @@ impl CumulativeTable {
             *out = sum.add(mass).min(1.0);
         }
         Self { first, lower, upper }
-    }
-
-    /// Index of the last entry.
-    pub fn last(&self) -> i64 {
-        self.first + self.lower.len() as i64 - 1
     }
 
     /// P(K ≤ k); 0 below the table, 1 above it.

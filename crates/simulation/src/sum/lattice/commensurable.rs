@@ -65,7 +65,8 @@ pub(crate) fn common_lattice(spec: &SumSpec) -> Result<CommonLattice, String> {
         let mut values = Vec::with_capacity(term.law.atoms.len());
         let mut masses = Vec::with_capacity(term.law.atoms.len());
         for atom in term.law.atoms.iter().filter(|atom| atom.mass > 0.0) {
-            let index = if lattice.span > 0.0 { ((atom.value - lattice.offset) / lattice.span).round() } else { 0.0 };
+            let index =
+                if lattice.span > 0.0 { ((atom.value - lattice.offset) / lattice.span).round() } else { 0.0 };
             let index = index * step * sign;
             if index.abs() > 1e15 {
                 return Err("the law has too many lattice points".into());

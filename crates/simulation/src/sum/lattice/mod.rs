@@ -6,7 +6,7 @@ mod power;
 mod summand;
 mod tail;
 
-use super::steps::{CumulativeTable, Cumulative, Scale, Steps};
+use super::steps::{Cumulative, CumulativeTable, Scale, Steps};
 use super::{Distance, Method, Route, StandardizedSum, SumError, SumMoments, SumSpec};
 use crate::figure::Figure;
 use crate::work::Work;
@@ -99,8 +99,15 @@ impl LatticeSum {
             let table = CumulativeTable::new(first, &masses);
             let relative = convolution::relative_error(&parts);
             let how = format!("{} values convolved directly", masses.len());
-            let direct =
-                Transformed { parts, table, absolute: 0.0, relative, range: whole, tails: None, missing: common.missing };
+            let direct = Transformed {
+                parts,
+                table,
+                absolute: 0.0,
+                relative,
+                range: whole,
+                tails: None,
+                missing: common.missing,
+            };
             (direct, how)
         } else {
             let (first, last) = window(&parts, OUTSIDE, sd);
@@ -128,8 +135,7 @@ impl LatticeSum {
             (transformed, how)
         };
         let detail = format!("span {} of the sum; {how}", common.span);
-        let steps =
-            Steps { cumulative, scale, moments, route: Route::Lattice, detail, reflected: false };
+        let steps = Steps { cumulative, scale, moments, route: Route::Lattice, detail, reflected: false };
         Ok(Self { steps })
     }
 }

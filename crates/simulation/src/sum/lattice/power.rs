@@ -26,8 +26,6 @@ const REFINED_FROM: f64 = 32.0;
 /// Masses on a window and what is known about their errors.
 #[derive(Debug)]
 pub(crate) struct Masses {
-    /// Index of the first mass.
-    pub first: i64,
     /// The masses, none negative.
     pub values: Vec<f64>,
     /// Bound on the error of the sum of any run of neighbouring masses.
@@ -113,7 +111,11 @@ pub(crate) fn masses(
             masses[offset.rem_euclid(length as i64) as usize] += mass;
         }
         // The lengths are the planned ones, so the transform cannot fail.
-        let _ = forward.process_with_scratch(&mut masses, &mut spectrum, &mut scratch[..forward.get_scratch_len()]);
+        let _ = forward.process_with_scratch(
+            &mut masses,
+            &mut spectrum,
+            &mut scratch[..forward.get_scratch_len()],
+        );
         let cut = (2.0 * NEGLIGIBLE / part.count).exp();
         for j in 1..=half {
             let square = spectrum[j].norm_sqr();
@@ -156,7 +158,8 @@ pub(crate) fn masses(
             }
             let turned = fraction(from_first.times(j as f64).times(scale));
             logarithm = log_sum;
-            angle = angle_sum - TAU * turned;
+            // The transform has e^(−itk): the conjugate.
+            angle = -angle_sum - TAU * turned;
             error = U * (24.0 + 12.0 * size + 8.0 * j as f64);
         } else {
             let turned = (j as u128 * u128::from(turn) % length as u128) as f64 * scale;
@@ -173,7 +176,8 @@ pub(crate) fn masses(
     }
     spectrum[0].im = 0.0;
     spectrum[half].im = 0.0;
-    let _ = backward.process_with_scratch(&mut spectrum, &mut masses, &mut scratch[..backward.get_scratch_len()]);
+    let _ =
+        backward.process_with_scratch(&mut spectrum, &mut masses, &mut scratch[..backward.get_scratch_len()]);
     let mut square = 0.0;
     for mass in &mut masses {
         *mass = mass.max(0.0);
@@ -185,7 +189,7 @@ pub(crate) fn masses(
     let damped_error = scale * 2.0 * damped_error
         + norm_error / (-libm::expm1(-2.0 * damping)).max(scale).sqrt()
         + 2.0 * dropped;
-    Ok(Masses { first, values: masses, run_error, damped_error: damped_error.min(run_error * 2.0) })
+    Ok(Masses { values: masses, run_error, damped_error: damped_error.min(run_error * 2.0) })
 }
 
 /// |1 − e^(−τ+it)| from sin(t/2): √((1 − e^−τ)² + 4e^−τ sin²(t/2)).

@@ -136,7 +136,8 @@ pub(crate) fn cumulants(parts: &[Part], theta: f64) -> Cumulants {
 /// E S in lattice units.
 pub(crate) fn center(parts: &[Part]) -> Twofold {
     parts.iter().fold(Twofold::default(), |sum, part| {
-        sum.plus_twofold(Twofold::product(part.count, part.anchor as f64)).plus_twofold(part.mean.times(part.count))
+        sum.plus_twofold(Twofold::product(part.count, part.anchor as f64))
+            .plus_twofold(part.mean.times(part.count))
     })
 }
 

@@ -97,7 +97,8 @@ impl Tail {
         let mut target;
         let mut tries = 0;
         loop {
-            target = (near_distance + HALF_WIDTH * sd).min(0.5 * (near_distance + furthest)).min(furthest - 0.4);
+            target =
+                (near_distance + HALF_WIDTH * sd).min(0.5 * (near_distance + furthest)).min(furthest - 0.4);
             (theta, cumulants) = tilt_for(parts, self.sign * target, theta);
             let tilted_sd = cumulants.curvature.sqrt();
             tries += 1;
@@ -131,9 +132,14 @@ impl Tail {
                 // ln(M(θ)ⁿ e^(−θ(k − E S))); both terms are known to a few units in their last places.
                 let turned = theta * mean.distance_to(k as f64);
                 let factor = (cumulants.value - turned).exp();
-                let relative = U * (32.0 + 8.0 * (cumulants.value.abs() + turned.abs()) + 4.0 / damping.max(U));
-                let relative = relative.min(U * (32.0 + 8.0 * (cumulants.value.abs() + turned.abs()) + 4.0 * size as f64));
-                tails[i] = Figure::bound(factor * sum, factor * (found.damped_error + relative * sum) + f64::MIN_POSITIVE);
+                let relative =
+                    U * (32.0 + 8.0 * (cumulants.value.abs() + turned.abs()) + 4.0 / damping.max(U));
+                let relative = relative
+                    .min(U * (32.0 + 8.0 * (cumulants.value.abs() + turned.abs()) + 4.0 * size as f64));
+                tails[i] = Figure::bound(
+                    factor * sum,
+                    factor * (found.damped_error + relative * sum) + f64::MIN_POSITIVE,
+                );
             }
             if k == near {
                 break;
