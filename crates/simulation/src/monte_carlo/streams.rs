@@ -62,7 +62,7 @@ pub(crate) fn for_blocks<A: Send>(
     let next = AtomicU64::new(from);
     let finished = AtomicU64::new(0);
     let threads = rayon::current_num_threads().max(1) as u64;
-    let workers = threads.min(to.saturating_sub(from)).max(1);
+    let workers = threads.min(to.saturating_sub(from)).max(1) as usize;
     let merged = (0..workers)
         .into_par_iter()
         .with_max_len(1)

@@ -8,8 +8,8 @@
 //! - continuous pieces: [`super::tabulated`].
 
 use super::alias::{AliasTable, BinomialCount, draw_binomial};
-use super::tabulated::{DRAW_ERROR, TabulatedQuantile, conditional_mass};
-use crate::law::{ClosedFamily, ClosedForm, Law};
+use super::tabulated::{DRAW_ERROR, TabulatedQuantile};
+use crate::law::{ClosedFamily, ClosedForm, Law, Sampler};
 use rand::Rng;
 use rand_distr::Distribution;
 
@@ -53,7 +53,7 @@ enum Part {
     /// A continuous piece.
     Stretch(Box<TabulatedQuantile>),
     /// A law that is not in normal form: its own sampler.
-    Whole { law: Law, center: f64 },
+    Whole { sampler: Box<Sampler>, center: f64 },
 }
 
 /// How copies are shared among the parts.
@@ -211,9 +211,9 @@ impl Part {
                     Distinct::Several
                 };
             }
-            Self::Whole { law, center } => {
+            Self::Whole { sampler, center } => {
                 for _ in 0..copies {
-                    let value = law.sample(random) - center;
+                    let value = sampler.sample(random) - center;
                     totals.sum += value;
                     if SQUARES {
                         totals.squares += value * value;
@@ -228,7 +228,7 @@ impl Part {
 /// Cuts a law into parts with their masses, heaviest first.
 fn parts_of(law: &Law, center: f64, count: u64) -> (Vec<Part>, Vec<f64>) {
     if law.only_simulation.is_some() || (law.atoms.is_empty() && law.pieces.is_empty()) {
-        return (vec![Part::Whole { law: law.clone(), center }], vec![1.0]);
+        return (vec![Part::Whole { sampler: Box::new(law.sampler().clone()), center }], vec![1.0]);
     }
     let mut parts = Vec::new();
     let atoms = &law.atoms;
@@ -243,7 +243,7 @@ fn parts_of(law: &Law, center: f64, count: u64) -> (Vec<Part>, Vec<f64>) {
         parts.push((Part::Points { values, table: AliasTable::new(&masses) }, masses.iter().sum()));
     }
     for piece in &law.pieces {
-        let mass = piece.factor * conditional_mass(piece);
+        let mass = piece.mass();
         if mass > 0.0 {
             parts.push((Part::Stretch(Box::new(TabulatedQuantile::new(piece, center))), mass));
         }

@@ -530,12 +530,12 @@ fn moments_of(spec: &SumSpec) -> Result<SumMoments, SumError> {
     let (mut mean, mut largest) = (0.0, 0.0f64);
     let mut scales = Vec::new();
     for term in &spec.terms {
-        let (Some(law_mean), Some(variance)) = (term.law.moments.mean, term.law.moments.variance) else {
+        let (Some(law_mean), Some(sd)) = (term.law.mean(), term.law.sd()) else {
             return Err(SumError::NoVariance);
         };
         n = n.saturating_add(term.count);
         mean += term.count as f64 * term.multiply * law_mean;
-        let scale = term.multiply * variance.sqrt();
+        let scale = term.multiply * sd;
         largest = largest.max(scale.abs());
         scales.push(scale);
     }

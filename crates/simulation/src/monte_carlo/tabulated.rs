@@ -56,7 +56,7 @@ impl PieceInverse {
     fn new(piece: &Piece, center: f64) -> Self {
         let at_low = if piece.low.is_finite() { piece.density.at_or_below(piece.low) } else { 0.0 };
         let above_high = if piece.high.is_finite() { piece.density.above(piece.high) } else { 0.0 };
-        let mass = conditional_mass(piece);
+        let mass = piece.between(piece.low, piece.high);
         Self { piece: piece.clone(), shift: piece.add - center, at_low, above_high, mass }
     }
 
@@ -128,22 +128,6 @@ impl PieceInverse {
             }
         }
         cells
-    }
-}
-
-/// F(high) − F(low) of a piece's family, without cancellation in either tail.
-pub(crate) fn conditional_mass(piece: &Piece) -> f64 {
-    let density = &piece.density;
-    let below = |x: f64| {
-        if x == f64::NEG_INFINITY { 0.0 } else if x == f64::INFINITY { 1.0 } else { density.at_or_below(x) }
-    };
-    let above = |x: f64| {
-        if x == f64::INFINITY { 0.0 } else if x == f64::NEG_INFINITY { 1.0 } else { density.above(x) }
-    };
-    if below(piece.low) <= 0.5 {
-        (below(piece.high) - below(piece.low)).max(0.0)
-    } else {
-        (above(piece.low) - above(piece.high)).max(0.0)
     }
 }
 
