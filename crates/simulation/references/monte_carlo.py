@@ -1,7 +1,8 @@
 """References for the Monte Carlo room that share nothing with its code.
 
-Prints Rust literals. Run: python3 monte_carlo.py [intervals|coverage]
+Prints Rust literals. Run: python3 monte_carlo.py [intervals|coverage|noncentral]
 - intervals: Clopper-Pearson ends by scipy.stats.beta.ppf.
+- noncentral: the noncentral t law by mpmath.
 - coverage: exact misses of the t interval for laws on few points, all multinomial cells in rational arithmetic
   (fractions), the t quantile by scipy.stats.t.isf; for lattice laws with many values by enumerating all multisets.
 """
@@ -103,6 +104,23 @@ def coverage():
         print(f"        difference {first} {second} {n1} {n2} {tail} {shift}: {low:.15e}, {high:.15e}")
 
 
+def noncentral():
+    """P(T < -t) and P(T > t) for normal samples, true mean shift*sd above the hypothesised: mpmath at 30 digits."""
+    import mpmath as mp
+
+    mp.mp.dps = 30
+    for n, tail, shift in [(12, 0.025, 0.5), (2, 0.025, 1.0), (30, 0.05, -0.2), (200, 0.005, 0.25)]:
+        df, d = mp.mpf(n - 1), mp.sqrt(n) * shift
+        beyond = lambda x: mp.betainc(df / 2, mp.mpf(1) / 2, 0, df / (df + x * x), regularized=True) / 2 - tail
+        t = mp.findroot(beyond, mp.mpf(stats.t.isf(tail, n - 1)))
+        constant = 2 * (df / 2) ** (df / 2) / mp.gamma(df / 2)
+        density = lambda w: constant * w ** (df - 1) * mp.exp(-df * w * w / 2)
+        points = [0, 0.25, 0.5, 0.75, 1, 1.25, 1.5, 2, 3, 5, 8, 12]
+        low = mp.quad(lambda w: mp.ncdf(-t * w - d) * density(w), points)
+        high = mp.quad(lambda w: mp.ncdf(d - t * w) * density(w), points)
+        print(f"    ({n}, {tail}, {shift}, {mp.nstr(low, 15)}, {mp.nstr(high, 15)}),")
+
+
 if __name__ == "__main__":
     chosen = sys.argv[1] if len(sys.argv) > 1 else "coverage"
-    {"intervals": intervals, "coverage": coverage}[chosen]()
+    {"intervals": intervals, "coverage": coverage, "noncentral": noncentral}[chosen]()

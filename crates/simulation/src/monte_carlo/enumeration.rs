@@ -35,9 +35,9 @@ const DOUBT: f64 = 1e-11;
 pub(crate) struct Sample {
     /// Its probability.
     pub mass: f64,
-    /// x̄ minus the true mean.
+    /// x̄ minus the true mean, in units.
     pub mean: f64,
-    /// s²/n.
+    /// s²/n, in units squared.
     pub spread: f64,
 }
 
@@ -45,11 +45,11 @@ pub(crate) struct Sample {
 #[derive(Debug)]
 pub(crate) struct Samples {
     n: u64,
-    /// Atoms minus mean, lightest first.
+    /// (Atoms minus mean)/unit, lightest first.
     values: Vec<f64>,
     /// Per atom but the last: its share of what is left, and one minus that.
     shares: Vec<(f64, f64)>,
-    /// Rounding of x̄ − mean is below this.
+    /// Rounding of x̄ − mean is below this, in units.
     pub slack: f64,
 }
 
@@ -75,7 +75,7 @@ impl Sums {
 
 impl Samples {
     /// `None` unless the law has few atoms and nothing else.
-    pub(crate) fn new(law: &Law, n: u64) -> Option<Self> {
+    pub(crate) fn new(law: &Law, n: u64, unit: f64) -> Option<Self> {
         if law.only_simulation.is_some() || !law.pieces.is_empty() || law.missing_mass > 0.0 {
             return None;
         }
@@ -88,7 +88,7 @@ impl Samples {
         // Measured from an atom first: the mean is then a sum of small differences.
         let origin = atoms[atoms.len() - 1].value;
         let offset: f64 = atoms.iter().map(|atom| atom.mass / total * (atom.value - origin)).sum();
-        let values: Vec<f64> = atoms.iter().map(|atom| atom.value - origin - offset).collect();
+        let values: Vec<f64> = atoms.iter().map(|atom| (atom.value - origin - offset) / unit).collect();
         let size = atoms.iter().map(|atom| (atom.value - origin).abs()).fold(0.0f64, f64::max);
         // From the light end, so that 1 − share does not cancel.
         let mut rest = vec![0.0; atoms.len() + 1];
@@ -99,7 +99,7 @@ impl Samples {
             .map(|index| (atoms[index].mass / rest[index], rest[index + 1] / rest[index]))
             .collect();
         // Atoms are written in decimals: each is known to half a unit in the last place.
-        let slack = f64::EPSILON * (16.0 * size + 4.0 * origin.abs());
+        let slack = f64::EPSILON * (16.0 * size + 4.0 * origin.abs()) / unit;
         Some(Self { n, values, shares, slack })
     }
 
@@ -225,10 +225,11 @@ pub(crate) fn classify(difference: f64, margin: f64, mass: f64, slack: f64, sums
 
 /// Exact misses, if the laws have few enough atoms for the sample sizes.
 pub(crate) fn misses(request: &StudentizedRequest, work: &Work) -> Result<Option<Misses>, SumError> {
-    let shift = request.shift_in_units();
+    let unit = request.unit();
+    let shift = request.shift_in_units() / unit;
     let (sums, rounding, cells) = match request.statistic {
         Studentized::Mean { law, n } => {
-            let Some(samples) = Samples::new(law, n).filter(|samples| samples.number() <= MOST_CELLS) else {
+            let Some(samples) = Samples::new(law, n, unit).filter(|samples| samples.number() <= MOST_CELLS) else {
                 return Ok(None);
             };
             let t = student::quantile_above((n - 1) as f64, request.tail_probability);
@@ -239,7 +240,7 @@ pub(crate) fn misses(request: &StudentizedRequest, work: &Work) -> Result<Option
             (sums, samples.mass_error(), samples.number())
         }
         Studentized::Difference { first, n_first, second, n_second } => {
-            let (Some(one), Some(two)) = (Samples::new(first, n_first), Samples::new(second, n_second)) else {
+            let (Some(one), Some(two)) = (Samples::new(first, n_first, unit), Samples::new(second, n_second, unit)) else {
                 return Ok(None);
             };
             let cells = one.number() * two.number();

@@ -12,7 +12,7 @@
 use super::bands::clopper_pearson;
 use super::critical::{CriticalValues, degrees_of_freedom};
 use super::streams::{Purpose, block_stream, for_blocks};
-use super::summands::SampleDrawer;
+use super::summands::{SampleDrawer, natural_unit};
 use super::{enumeration, normal_samples, pairs};
 use crate::figure::Figure;
 use crate::law::Law;
@@ -148,11 +148,11 @@ pub fn misses(
     if laws.iter().any(|law| law.moments.mean.is_none()) {
         return refuse("the law has no mean");
     }
-    let spread = |law: &&Law| law.moments.variance.is_some_and(|variance| variance > 0.0);
-    if request.shift != 0.0 && laws.iter().any(|law| law.moments.variance.is_none()) {
+    let varies = |law: &&Law| law.sd().is_none_or(|sd| sd > 0.0);
+    if request.shift != 0.0 && laws.iter().any(|law| law.sd().is_none()) {
         return refuse("without a finite variance a shift has no unit");
     }
-    if !laws.iter().any(|law| spread(&law) || law.moments.variance.is_none()) {
+    if !laws.iter().any(varies) {
         return Err(SumError::NoVariance);
     }
     if let Some(exact) = normal_samples::misses(request, work)? {
@@ -175,18 +175,22 @@ impl StudentizedRequest<'_> {
         }
     }
 
+    /// A unit in which neither values nor squares overflow: for two groups the larger one's, of those that vary.
+    pub(crate) fn unit(&self) -> f64 {
+        self.laws().into_iter().filter(|law| !law.is_constant()).map(natural_unit).fold(f64::MIN_POSITIVE, f64::max)
+    }
+
     /// True minus hypothesised value, in the quantity's unit.
     pub(crate) fn shift_in_units(&self) -> f64 {
         if self.shift == 0.0 {
             return 0.0;
         }
-        let variance = |law: &Law| law.moments.variance.unwrap_or(0.0);
+        let sd_of_mean = |law: &Law, n: u64| law.sd().unwrap_or(0.0) / (n as f64).sqrt();
         self.shift
             * match self.statistic {
-                Studentized::Mean { law, .. } => variance(law).sqrt(),
+                Studentized::Mean { law, .. } => sd_of_mean(law, 1),
                 Studentized::Difference { first, n_first, second, n_second } => {
-                    (variance(first).sqrt() / (n_first as f64).sqrt())
-                        .hypot(variance(second).sqrt() / (n_second as f64).sqrt())
+                    sd_of_mean(first, n_first).hypot(sd_of_mean(second, n_second))
                 }
             }
     }
@@ -220,20 +224,23 @@ struct Counts {
 impl Sampler {
     fn new(request: &StudentizedRequest) -> Self {
         let tail = request.tail_probability;
+        let unit = request.unit();
         let (drawers, rule) = match request.statistic {
             Studentized::Mean { law, n } => {
                 let fixed = student::quantile_above((n - 1) as f64, tail);
-                (vec![(SampleDrawer::new(law, n), n as f64)], Rule::Fixed(fixed))
+                (vec![(SampleDrawer::new(law, n, unit), n as f64)], Rule::Fixed(fixed))
             }
             Studentized::Difference { first, n_first, second, n_second } => {
                 let (n1, n2) = (n_first as f64, n_second as f64);
-                let drawers =
-                    vec![(SampleDrawer::new(first, n_first), n1), (SampleDrawer::new(second, n_second), n2)];
+                let drawers = vec![
+                    (SampleDrawer::new(first, n_first, unit), n1),
+                    (SampleDrawer::new(second, n_second, unit), n2),
+                ];
                 (drawers, Rule::Welch(CriticalValues::new(tail, n1.min(n2) - 1.0, n1 + n2 - 2.0)))
             }
         };
         let mut sampler =
-            Self { drawers, rule, shift: request.shift_in_units(), seed: request.seed, per_block: 1 };
+            Self { drawers, rule, shift: request.shift_in_units() / unit, seed: request.seed, per_block: 1 };
         sampler.per_block = ((BLOCK_COST / sampler.cost()) as u64).clamp(1, 1024);
         sampler
     }
@@ -379,3 +386,7 @@ fn figures(counts: &Counts, risk: f64, sampler: &Sampler, request: &StudentizedR
         route: Route::Simulation,
     }
 }
+
+#[cfg(test)]
+#[path = "studentized_tests.rs"]
+mod tests;

@@ -1,6 +1,6 @@
 //! Drawing n copies of a law at once: their sum, and for studentized statistics their sum of squares.
 //!
-//! Everything is measured from the mean, so nothing cancels. How n copies are drawn:
+//! Everything is measured from the mean, so nothing cancels, and in a given unit, so no square overflows. How n copies are drawn:
 //! - a law whose sums have a closed form: one draw of the sum;
 //! - a mixed law (atoms and continuous pieces): how many copies fall on each part, as binomial counts (one draw
 //!   from a table for a mostly-zero law), then each piece's copies;
@@ -18,7 +18,7 @@ const COPIES_PER_COUNT: u64 = 20;
 /// At most so many atoms get a count of their own.
 const COUNTED_ATOMS: usize = 256;
 
-/// Totals of a sample, measured from the mean of the law.
+/// Totals of a sample, measured from the mean of the law in units.
 #[derive(Debug, Clone, Copy, PartialEq)]
 pub(crate) struct Totals {
     /// Σ (x − mean).
@@ -39,7 +39,7 @@ pub(crate) struct SampleDrawer {
     pub cost: f64,
     /// Bound on the Kolmogorov distance between the drawn law of the sum and the true one.
     pub error: f64,
-    /// Size of the atoms' values, against which rounding is measured.
+    /// Size of the values in units, against which rounding is measured.
     pub scale: f64,
 }
 
@@ -53,7 +53,7 @@ enum Part {
     /// A continuous piece.
     Stretch(Box<TabulatedQuantile>),
     /// A law that is not in normal form: its own sampler.
-    Whole { sampler: Box<Sampler>, center: f64 },
+    Whole { sampler: Box<Sampler>, center: f64, unit: f64 },
 }
 
 /// How copies are shared among the parts.
@@ -68,10 +68,10 @@ enum Split {
 }
 
 impl SampleDrawer {
-    /// Prepares drawing `count` copies of a law with a finite mean.
-    pub(crate) fn new(law: &Law, count: u64) -> Self {
+    /// Prepares drawing `count` copies of (X − mean)/`unit`, for a law with a finite mean.
+    pub(crate) fn new(law: &Law, count: u64, unit: f64) -> Self {
         let center = law.moments.mean.unwrap_or(0.0);
-        let (parts, masses) = parts_of(law, center, count);
+        let (parts, masses) = parts_of(law, center, unit, count);
         let split = match parts.len() {
             0 | 1 => Split::One,
             2 => counts(&masses, count),
@@ -87,7 +87,7 @@ impl SampleDrawer {
         };
         let continuous = parts.iter().any(|part| matches!(part, Part::Stretch(_)));
         let error = count as f64 * (law.missing_mass + if continuous { DRAW_ERROR } else { 1e-15 });
-        let scale = law.atoms.iter().map(|atom| atom.value.abs()).fold(center.abs(), f64::max);
+        let scale = law.atoms.iter().map(|atom| (atom.value / unit).abs()).fold((center / unit).abs(), f64::max);
         let cost = (per_copy * count as f64 + overhead).max(1.0);
         Self { count, parts, split, cost, error: error.min(1.0), scale }
     }
@@ -211,9 +211,9 @@ impl Part {
                     Distinct::Several
                 };
             }
-            Self::Whole { sampler, center } => {
+            Self::Whole { sampler, center, unit } => {
                 for _ in 0..copies {
-                    let value = sampler.sample(random) - center;
+                    let value = (sampler.sample(random) - center) / unit;
                     totals.sum += value;
                     if SQUARES {
                         totals.squares += value * value;
@@ -226,9 +226,9 @@ impl Part {
 }
 
 /// Cuts a law into parts with their masses, heaviest first.
-fn parts_of(law: &Law, center: f64, count: u64) -> (Vec<Part>, Vec<f64>) {
+fn parts_of(law: &Law, center: f64, unit: f64, count: u64) -> (Vec<Part>, Vec<f64>) {
     if law.only_simulation.is_some() || (law.atoms.is_empty() && law.pieces.is_empty()) {
-        return (vec![Part::Whole { sampler: Box::new(law.sampler().clone()), center }], vec![1.0]);
+        return (vec![Part::Whole { sampler: Box::new(law.sampler().clone()), center, unit }], vec![1.0]);
     }
     let mut parts = Vec::new();
     let atoms = &law.atoms;
@@ -236,16 +236,16 @@ fn parts_of(law: &Law, center: f64, count: u64) -> (Vec<Part>, Vec<f64>) {
         || (atoms.len() <= COUNTED_ATOMS && count >= COPIES_PER_COUNT * atoms.len() as u64)
         || (atoms.len() == 2 && law.pieces.is_empty())
     {
-        parts.extend(atoms.iter().map(|atom| (Part::Point(atom.value - center), atom.mass)));
+        parts.extend(atoms.iter().map(|atom| (Part::Point((atom.value - center) / unit), atom.mass)));
     } else if !atoms.is_empty() {
         let masses: Vec<f64> = atoms.iter().map(|atom| atom.mass).collect();
-        let values = atoms.iter().map(|atom| atom.value - center).collect();
+        let values = atoms.iter().map(|atom| (atom.value - center) / unit).collect();
         parts.push((Part::Points { values, table: AliasTable::new(&masses) }, masses.iter().sum()));
     }
     for piece in &law.pieces {
         let mass = piece.mass();
         if mass > 0.0 {
-            parts.push((Part::Stretch(Box::new(TabulatedQuantile::new(piece, center))), mass));
+            parts.push((Part::Stretch(Box::new(TabulatedQuantile::new(piece, center, unit))), mass));
         }
     }
     parts.sort_by(|a, b| b.1.total_cmp(&a.1));
@@ -262,6 +262,13 @@ fn counts(masses: &[f64], count: u64) -> Split {
     let shares: Vec<f64> = masses.iter().zip(&after).map(|(mass, rest)| (mass / rest).clamp(0.0, 1.0)).collect();
     let first = BinomialCount::new(count, masses[0] / after[0], after[1] / after[0]);
     Split::Counts { first, shares }
+}
+
+/// A unit of the law's own size: its sd, or where that is infinite (or 0) the distance of its deciles.
+pub(crate) fn natural_unit(law: &Law) -> f64 {
+    let deciles = || law.quantile(0.9) - law.quantile(0.1);
+    let unit = law.sd().filter(|sd| *sd > 0.0).unwrap_or_else(deciles);
+    if unit > 0.0 && unit.is_finite() { unit } else { 1.0 }
 }
 
 /// Draws the sum of n copies of a law with a closed form in one go, measured from its mean.

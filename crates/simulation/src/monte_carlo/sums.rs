@@ -14,7 +14,7 @@
 use super::bands::{Band, clopper_pearson, uniform_band};
 use super::jumps::{Jumps, jumps_of};
 use super::streams::{Purpose, block_stream, for_blocks};
-use super::summands::{ClosedSum, SampleDrawer};
+use super::summands::{ClosedSum, SampleDrawer, natural_unit};
 use super::tally::{Cells, Layout, Tally};
 use crate::figure::Figure;
 use crate::special::normal;
@@ -428,11 +428,14 @@ impl Plan {
             .filter(|term| term.count > 0 && term.multiply != 0.0)
             .map(|term| {
                 let closed = term.law.closed_form.as_ref().and_then(|form| ClosedSum::new(form, term.count));
-                let drawer = match closed {
-                    Some(closed) => TermDrawer::Closed(closed),
-                    None => TermDrawer::Copies(Box::new(SampleDrawer::new(&term.law, term.count))),
-                };
-                (drawer, term.multiply / moments.sd)
+                match closed {
+                    Some(closed) => (TermDrawer::Closed(closed), term.multiply / moments.sd),
+                    None => {
+                        let unit = natural_unit(&term.law);
+                        let copies = SampleDrawer::new(&term.law, term.count, unit);
+                        (TermDrawer::Copies(Box::new(copies)), term.multiply * (unit / moments.sd))
+                    }
+                }
             })
             .collect();
         let cost: f64 = terms.iter().map(|(drawer, _)| drawer.cost()).sum::<f64>().max(1.0);
@@ -559,3 +562,7 @@ fn moments_of(spec: &SumSpec) -> Result<SumMoments, SumError> {
         excess_kurtosis: cumulant(4, |moments| moments.excess_kurtosis),
     })
 }
+
+#[cfg(test)]
+#[path = "sums_tests.rs"]
+mod tests;

@@ -42,22 +42,24 @@ pub(crate) struct TabulatedQuantile {
     upper: Vec<Cell>,
 }
 
-/// The exact conditional quantile of a piece, in image units minus a centre.
+/// The exact conditional quantile of a piece, of (image − centre)/unit.
 #[derive(Debug, Clone)]
 struct PieceInverse {
     piece: Piece,
     shift: f64,
+    factor: f64,
     at_low: f64,
     above_high: f64,
     mass: f64,
 }
 
 impl PieceInverse {
-    fn new(piece: &Piece, center: f64) -> Self {
+    fn new(piece: &Piece, center: f64, unit: f64) -> Self {
         let at_low = if piece.low.is_finite() { piece.density.at_or_below(piece.low) } else { 0.0 };
         let above_high = if piece.high.is_finite() { piece.density.above(piece.high) } else { 0.0 };
         let mass = piece.between(piece.low, piece.high);
-        Self { piece: piece.clone(), shift: piece.add - center, at_low, above_high, mass }
+        let (shift, factor) = ((piece.add - center) / unit, piece.multiply / unit);
+        Self { piece: piece.clone(), shift, factor, at_low, above_high, mass }
     }
 
     /// y with conditional probability `p` below it and `q` = 1 − p above it, in the family's units.
@@ -73,7 +75,7 @@ impl PieceInverse {
     }
 
     fn image(&self, y: f64) -> f64 {
-        self.shift + self.piece.multiply * y
+        self.shift + self.factor * y
     }
 
     /// How far `y` is from conditional probability p (q = 1 − p), in probability.
@@ -119,9 +121,9 @@ impl PieceInverse {
                 self.miss(evaluate(&cell, t), p, q) <= 0.25 * TOLERANCE
             });
             if good {
-                let multiply = self.piece.multiply;
+                let factor = self.factor;
                 let image =
-                    [self.shift + multiply * y0, multiply * cell[1], multiply * cell[2], multiply * cell[3]];
+                    [self.shift + factor * y0, factor * cell[1], factor * cell[2], factor * cell[3]];
                 if image.iter().all(|c| c.is_finite()) {
                     cells[index] = image;
                 }
@@ -137,9 +139,9 @@ fn evaluate(cell: &Cell, t: f64) -> f64 {
 }
 
 impl TabulatedQuantile {
-    /// Tables a piece of positive mass. Draws are X − `center`.
-    pub(crate) fn new(piece: &Piece, center: f64) -> Self {
-        let inverse = PieceInverse::new(piece, center);
+    /// Tables a piece of positive mass. Draws are (X − `center`)/`unit`.
+    pub(crate) fn new(piece: &Piece, center: f64, unit: f64) -> Self {
+        let inverse = PieceInverse::new(piece, center, unit);
         let outer = OUTER as f64 / CELLS as f64;
         Self {
             middle: inverse.table(1.0, false, true),
@@ -195,5 +197,76 @@ impl TabulatedQuantile {
             f64::NAN
         };
         if value.is_nan() { self.inverse.image(self.inverse.family_units(p, q)) } else { value }
+    }
+}
+
+#[cfg(test)]
+mod tests {
+    use super::super::streams::{Purpose, block_stream};
+    use super::*;
+    use crate::law::LawSpec;
+
+    fn examples() -> Vec<(&'static str, Piece)> {
+        let first = |spec: LawSpec| spec.compile().expect("a valid law").pieces[0].clone();
+        let lognormal = LawSpec::Lognormal { log_mean: Some(0.0), log_sd: Some(1.0), mean: None, sd: None };
+        vec![
+            ("exponential", first(LawSpec::Exponential { mean: 2.0 })),
+            ("normal", first(LawSpec::Normal { mean: 1.0, sd: 3.0 })),
+            ("uniform", first(LawSpec::Uniform { low: -1.0, high: 4.0 })),
+            ("lognormal", first(lognormal.clone())),
+            ("weibull", first(LawSpec::Weibull { shape: 0.7, scale: 1.0 })),
+            ("gamma", first(LawSpec::Gamma { shape: 0.4, scale: 1.0 })),
+            ("lomax", first(LawSpec::Lomax { shape: 2.3, scale: 1.0 })),
+            ("restricted", first(LawSpec::Restrict { law: Box::new(lognormal), low: Some(0.5), high: Some(2.0) })),
+        ]
+    }
+
+    #[test]
+    fn accepted_polynomials_meet_the_tolerance_between_the_checked_points() {
+        for (name, piece) in examples() {
+            let table = TabulatedQuantile::new(&piece, 0.0, 1.0);
+            let inverse = &table.inverse;
+            let mut without = 0;
+            for index in OUTER..CELLS - OUTER {
+                if table.middle[index][0].is_nan() {
+                    without += 1;
+                    continue;
+                }
+                for t in [0.0, 0.02, 0.15, 0.39, 0.61, 0.83, 0.99, 1.0] {
+                    let u = (index as f64 + t) / CELLS as f64;
+                    let y = piece.preimage(evaluate(&table.middle[index], t));
+                    assert!(inverse.miss(y, u, 1.0 - u) <= TOLERANCE, "{name} at {u}");
+                }
+            }
+            assert!(without <= 8, "{name}: {without} stretches without a polynomial");
+        }
+    }
+
+    #[test]
+    fn draws_follow_the_law() {
+        for (name, piece) in examples() {
+            let table = TabulatedQuantile::new(&piece, 0.5, 2.0);
+            let mut random = block_stream(11, Purpose::Sums, 0);
+            let draws = 300_001u64;
+            let mut values = Vec::new();
+            table.draw_each(draws, &mut random, |value| values.push(0.5 + 2.0 * value));
+            values.sort_by(f64::total_cmp);
+            let mass = piece.mass();
+            let mut largest = 0.0f64;
+            for (index, x) in values.iter().enumerate() {
+                let p = piece.at_or_below(*x) / mass;
+                largest = largest.max((index as f64 / draws as f64 - p).abs());
+            }
+            // Probability 1e-6 of exceeding it, each (Massart's inequality).
+            assert!(largest < ((2.0f64 / 1e-6).ln() / (2.0 * draws as f64)).sqrt(), "{name}: {largest}");
+            // The outer tables, alone: 1/64 on either side, and a thousandth.
+            for share in [1.0 / 64.0, 1e-3] {
+                let low = values.iter().filter(|x| piece.at_or_below(**x) < share * mass).count() as f64;
+                let high = values.iter().filter(|x| piece.above(**x) < share * mass).count() as f64;
+                let (expected, sd) = (share * draws as f64, (share * draws as f64).sqrt());
+                assert!((low - expected).abs() < 5.0 * sd, "{name}: {low} for {expected}");
+                assert!((high - expected).abs() < 5.0 * sd, "{name}: {high} for {expected}");
+            }
+        }
     }
 }
