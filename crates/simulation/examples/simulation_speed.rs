@@ -35,12 +35,21 @@ fn main() {
         let n = 40;
         let method = Method { draws: 1_000_000, ..Method::default() };
         let start = Instant::now();
-        let sum = SimulatedSum::build(&SumSpec::like_summands(law.clone(), n), &method, &[], "of a trial", &Work::new());
+        let sum = SimulatedSum::build(
+            &SumSpec::like_summands(law.clone(), n),
+            &method,
+            &[],
+            "of a trial",
+            &Work::new(),
+        );
         let seconds = start.elapsed().as_secs_f64();
         if let Ok(sum) = sum {
             use gaussgap_simulation::sum::StandardizedSum;
             let draws = sum.draws().unwrap_or(0) as f64;
-            println!("{name}: sums of {n}: {:.1} million values per second", draws * n as f64 / seconds / 1e6);
+            println!(
+                "{name}: sums of {n}: {:.1} million values per second",
+                draws * n as f64 / seconds / 1e6
+            );
         }
         let request = StudentizedRequest {
             statistic: Studentized::Mean { law: &law, n },

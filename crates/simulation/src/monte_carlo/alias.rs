@@ -17,7 +17,8 @@ impl AliasTable {
         let columns_count = weights.len() as f64;
         let mut share: Vec<f64> = weights.iter().map(|weight| weight / total * columns_count).collect();
         let mut columns: Vec<(u64, u32)> = (0..weights.len()).map(|index| (u64::MAX, index as u32)).collect();
-        let (mut small, mut large): (Vec<usize>, Vec<usize>) = (0..weights.len()).partition(|&i| share[i] < 1.0);
+        let (mut small, mut large): (Vec<usize>, Vec<usize>) =
+            (0..weights.len()).partition(|&i| share[i] < 1.0);
         while let (Some(&poor), Some(&rich)) = (small.last(), large.last()) {
             small.pop();
             columns[poor] = ((share[poor] * 18_446_744_073_709_551_616.0) as u64, rich as u32);
@@ -103,7 +104,13 @@ pub(crate) fn draw_binomial(trials: u64, p: f64, random: &mut impl Rng) -> u64 {
 /// below 4·d·2⁻⁵³, so the error of any sum of masses is below 4·2⁻⁵³·E|K − mode| ≤ 4·2⁻⁵³(sd + 1), besides
 /// `outside` and the rounding of the normalisation. The window ends follow from Bernstein's inequality,
 /// P(|K − np| ≥ d) ≤ 2 exp(−d²/(2(npq + d/3))).
-pub(crate) fn binomial_masses(trials: u64, p: f64, q: f64, outside: f64, longest: usize) -> Option<(u64, Vec<f64>)> {
+pub(crate) fn binomial_masses(
+    trials: u64,
+    p: f64,
+    q: f64,
+    outside: f64,
+    longest: usize,
+) -> Option<(u64, Vec<f64>)> {
     let n = trials as f64;
     let (mean, variance) = (n * p, n * p * q);
     let log_limit = (2.0 / outside).ln();

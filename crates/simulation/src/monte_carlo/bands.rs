@@ -131,8 +131,14 @@ mod tests {
         for (count, draws, risk, low, high) in REFERENCES {
             let band = clopper_pearson(count, draws, risk);
             let width = high - low;
-            assert!(band.low <= low + 1e-9 * width && band.low > low - 1e-5 * width, "{count}/{draws}: {band:?}");
-            assert!(band.high >= high - 1e-9 * width && band.high < high + 1e-5 * width, "{count}/{draws}: {band:?}");
+            assert!(
+                band.low <= low + 1e-9 * width && band.low > low - 1e-5 * width,
+                "{count}/{draws}: {band:?}"
+            );
+            assert!(
+                band.high >= high - 1e-9 * width && band.high < high + 1e-5 * width,
+                "{count}/{draws}: {band:?}"
+            );
             let outer = divergence_interval(count, draws, risk);
             assert!(outer.low <= low && outer.high >= high && outer.high - outer.low < 1.3 * width);
         }

@@ -198,7 +198,11 @@ impl Samples {
         let squares = if counts.contains(&self.n) {
             0.0
         } else {
-            counts.iter().zip(&self.values).map(|(&k, value)| k as f64 * (value - mean) * (value - mean)).sum()
+            counts
+                .iter()
+                .zip(&self.values)
+                .map(|(&k, value)| k as f64 * (value - mean) * (value - mean))
+                .sum()
         };
         Sample { mass, mean, spread: squares / (n - 1.0) / n }
     }
@@ -229,7 +233,8 @@ pub(crate) fn misses(request: &StudentizedRequest, work: &Work) -> Result<Option
     let shift = request.shift_in_units() / unit;
     let (sums, rounding, cells) = match request.statistic {
         Studentized::Mean { law, n } => {
-            let Some(samples) = Samples::new(law, n, unit).filter(|samples| samples.number() <= MOST_CELLS) else {
+            let Some(samples) = Samples::new(law, n, unit).filter(|samples| samples.number() <= MOST_CELLS)
+            else {
                 return Ok(None);
             };
             let t = student::quantile_above((n - 1) as f64, request.tail_probability);
@@ -240,7 +245,9 @@ pub(crate) fn misses(request: &StudentizedRequest, work: &Work) -> Result<Option
             (sums, samples.mass_error(), samples.number())
         }
         Studentized::Difference { first, n_first, second, n_second } => {
-            let (Some(one), Some(two)) = (Samples::new(first, n_first, unit), Samples::new(second, n_second, unit)) else {
+            let (Some(one), Some(two)) =
+                (Samples::new(first, n_first, unit), Samples::new(second, n_second, unit))
+            else {
                 return Ok(None);
             };
             let cells = one.number() * two.number();
@@ -248,8 +255,7 @@ pub(crate) fn misses(request: &StudentizedRequest, work: &Work) -> Result<Option
                 return Ok(None);
             }
             let (n1, n2) = (n_first as f64, n_second as f64);
-            let table =
-                CriticalValues::new(request.tail_probability, n1.min(n2) - 1.0, n1 + n2 - 2.0);
+            let table = CriticalValues::new(request.tail_probability, n1.min(n2) - 1.0, n1 + n2 - 2.0);
             let slack = one.slack + two.slack + 4.0 * f64::EPSILON * shift.abs();
             // The shorter list is kept, the longer one streamed.
             let swap = one.number() < two.number();

@@ -19,8 +19,7 @@ pub(crate) enum Jumps {
 /// Finds the jumps of a sum.
 pub(crate) fn jumps_of(spec: &SumSpec, moments: &SumMoments, tolerance: f64) -> Jumps {
     let terms: Vec<_> = spec.terms.iter().filter(|term| term.count > 0 && term.multiply != 0.0).collect();
-    let continuous =
-        |term: &&crate::sum::Term| term.law.atoms.is_empty() && !term.law.pieces.is_empty();
+    let continuous = |term: &&crate::sum::Term| term.law.atoms.is_empty() && !term.law.pieces.is_empty();
     if terms.iter().any(continuous) {
         return Jumps::At(Vec::new());
     }
@@ -88,7 +87,12 @@ fn lattice_of(spec: &SumSpec, moments: &SumMoments) -> Option<Jumps> {
         origin += count * (lattice.offset - center) * scale;
         span = common_span(span, (lattice.span * scale).abs())?;
     }
-    (span > 0.0 && span.is_finite() && origin.is_finite()).then_some(Jumps::Lattice { origin, span, low, high })
+    (span > 0.0 && span.is_finite() && origin.is_finite()).then_some(Jumps::Lattice {
+        origin,
+        span,
+        low,
+        high,
+    })
 }
 
 /// The largest g of which both spans are integer multiples, to rounding; at most 2²⁰ times smaller than either.

@@ -20,7 +20,9 @@ pub(crate) fn misses(request: &StudentizedRequest, work: &Work) -> Result<Option
             let (tail, df) = (request.tail_probability, (n - 1) as f64);
             if request.shift == 0.0 {
                 let outcome = Outcome { low: tail, high: tail, error: 1e-15 };
-                return Ok(Some(outcome.misses(Route::ClosedForm, "the statistic has Student's t law".to_owned())));
+                return Ok(Some(
+                    outcome.misses(Route::ClosedForm, "the statistic has Student's t law".to_owned()),
+                ));
             }
             let t = student::quantile_above(df, tail);
             let center = request.shift * (n as f64).sqrt();

@@ -128,9 +128,8 @@ pub fn misses(
     work: &Work,
 ) -> Result<Misses, SumError> {
     work.check()?;
-    let refuse = |reason: &str| {
-        Err(SumError::NotAvailable { route: Route::Simulation, reason: reason.to_owned() })
-    };
+    let refuse =
+        |reason: &str| Err(SumError::NotAvailable { route: Route::Simulation, reason: reason.to_owned() });
     let smallest = match request.statistic {
         Studentized::Mean { n, .. } => n,
         Studentized::Difference { n_first, n_second, .. } => n_first.min(n_second),
@@ -177,7 +176,11 @@ impl StudentizedRequest<'_> {
 
     /// A unit in which neither values nor squares overflow: for two groups the larger one's, of those that vary.
     pub(crate) fn unit(&self) -> f64 {
-        self.laws().into_iter().filter(|law| !law.is_constant()).map(natural_unit).fold(f64::MIN_POSITIVE, f64::max)
+        self.laws()
+            .into_iter()
+            .filter(|law| !law.is_constant())
+            .map(natural_unit)
+            .fold(f64::MIN_POSITIVE, f64::max)
     }
 
     /// True minus hypothesised value, in the quantity's unit.
@@ -298,11 +301,8 @@ impl Sampler {
 fn mean_and_spread(drawer: &SampleDrawer, n: f64, random: &mut super::streams::Stream) -> (f64, f64) {
     let totals = drawer.draw::<true>(random);
     let mean = totals.sum / n;
-    let spread = if totals.all_equal {
-        0.0
-    } else {
-        (totals.squares - totals.sum * mean).max(0.0) / (n - 1.0) / n
-    };
+    let spread =
+        if totals.all_equal { 0.0 } else { (totals.squares - totals.sum * mean).max(0.0) / (n - 1.0) / n };
     (mean, spread)
 }
 
@@ -348,8 +348,11 @@ fn simulate(
             |block, counts| sampler.draw_block(block, counts),
             |a, b| Counts { low: a.low + b.low, high: a.high + b.high, all: a.all + b.all },
         )?;
-        counts =
-            Counts { low: counts.low + added.low, high: counts.high + added.high, all: counts.all + added.all };
+        counts = Counts {
+            low: counts.low + added.low,
+            high: counts.high + added.high,
+            all: counts.all + added.all,
+        };
         done = blocks;
         let spent = if looks == 1 {
             risk
@@ -365,7 +368,10 @@ fn simulate(
             break;
         }
     }
-    result.ok_or(SumError::NotAvailable { route: Route::Simulation, reason: "no samples were asked for".to_owned() })
+    result.ok_or(SumError::NotAvailable {
+        route: Route::Simulation,
+        reason: "no samples were asked for".to_owned(),
+    })
 }
 
 fn figures(counts: &Counts, risk: f64, sampler: &Sampler, request: &StudentizedRequest) -> Misses {

@@ -43,7 +43,15 @@ const ENUMERATED: [(&[f64], &[f64], u64, f64, f64, f64, f64); 7] = [
     (&[0.0, 1.0], &[7.0, 3.0], 17, 0.05, 0.4, 2.326305139872070e-03, 4.031811359147532e-01),
     (&[0.0, 1.0, 5.0], &[6.0, 3.0, 1.0], 12, 0.025, 0.0, 2.322354654720000e-01, 2.591491834000000e-03),
     (&[-1.0, 0.0, 1.0], &[1.0, 2.0, 1.0], 6, 0.025, 0.0, 1.782226562500000e-02, 1.782226562500000e-02),
-    (&[0.0, 1.0, 2.0, 10.0], &[4.0, 3.0, 2.0, 1.0], 9, 0.005, 0.0, 1.867348090000000e-01, 3.215400000000000e-05),
+    (
+        &[0.0, 1.0, 2.0, 10.0],
+        &[4.0, 3.0, 2.0, 1.0],
+        9,
+        0.005,
+        0.0,
+        1.867348090000000e-01,
+        3.215400000000000e-05,
+    ),
     (&[0.0, 1.0, 2.0, 3.0, 4.0, 5.0], &[1.0; 6], 8, 0.025, 0.0, 2.997411313062033e-02, 2.997411313062033e-02),
 ];
 
@@ -91,12 +99,27 @@ fn simulation_agrees_with_enumeration() {
 #[test]
 fn welch_enumeration_agrees_with_rational_arithmetic() {
     let cases = [
-        (table(&[0.0, 1.0], &[8.0, 2.0]), table(&[0.0, 1.0], &[7.0, 3.0]), 15, 12, 0.0, 2.877854346588440e-02, 1.219323706715934e-02),
-        (table(&[0.0, 1.0], &[9.0, 1.0]), table(&[0.0, 1.0, 4.0], &[6.0, 3.0, 1.0]), 20, 7, 0.5, 5.970862775652936e-02, 6.440492652959348e-03),
+        (
+            table(&[0.0, 1.0], &[8.0, 2.0]),
+            table(&[0.0, 1.0], &[7.0, 3.0]),
+            15,
+            12,
+            0.0,
+            2.877854346588440e-02,
+            1.219323706715934e-02,
+        ),
+        (
+            table(&[0.0, 1.0], &[9.0, 1.0]),
+            table(&[0.0, 1.0, 4.0], &[6.0, 3.0, 1.0]),
+            20,
+            7,
+            0.5,
+            5.970862775652936e-02,
+            6.440492652959348e-03,
+        ),
     ];
     for (first, second, n_first, n_second, shift, low, high) in &cases {
-        let statistic =
-            Studentized::Difference { first, n_first: *n_first, second, n_second: *n_second };
+        let statistic = Studentized::Difference { first, n_first: *n_first, second, n_second: *n_second };
         let request = StudentizedRequest { statistic, ..mean(first, 2, 0.025, *shift) };
         assert_exact(&misses(&request, &never, &Work::new()).unwrap(), *low, *high);
         let simulated = simulate(&request, &never, &Work::new()).unwrap();
@@ -110,11 +133,15 @@ fn welch_enumeration_agrees_with_rational_arithmetic() {
 #[test]
 fn t_intervals_of_skewed_laws_agree_with_known_coverage() {
     let exponential = law(LawSpec::Exponential { mean: 3.0 });
-    let lognormal =
-        law(LawSpec::Lognormal { log_mean: Some(0.0), log_sd: Some(1.0), mean: None, sd: None });
+    let lognormal = law(LawSpec::Lognormal { log_mean: Some(0.0), log_sd: Some(1.0), mean: None, sd: None });
     let uniform = law(LawSpec::Uniform { low: -1.0, high: 5.0 });
     let sides = [Some((0.0955, 0.0040)), Some((0.0654, 0.0074)), None, None];
-    let cases = [(&exponential, 10, 0.900), (&exponential, 30, 0.927), (&lognormal, 30, 0.883), (&uniform, 10, 0.946)];
+    let cases = [
+        (&exponential, 10, 0.900),
+        (&exponential, 30, 0.927),
+        (&lognormal, 30, 0.883),
+        (&uniform, 10, 0.946),
+    ];
     for ((law, n, covered), sides) in cases.into_iter().zip(sides) {
         let found = misses(&mean(law, n, 0.025, 0.0), &never, &Work::new()).unwrap();
         assert!((found.covered.value - covered).abs() <= found.covered.error + 0.0005 + 0.0012, "{found:?}");
@@ -144,7 +171,8 @@ fn normal_samples_have_the_noncentral_t_law() {
 
 #[test]
 fn welch_for_normal_groups_agrees_with_simulation() {
-    let (first, second) = (law(LawSpec::Normal { mean: 5.0, sd: 2.0 }), law(LawSpec::Normal { mean: 1.0, sd: 9.0 }));
+    let (first, second) =
+        (law(LawSpec::Normal { mean: 5.0, sd: 2.0 }), law(LawSpec::Normal { mean: 1.0, sd: 9.0 }));
     for (n_first, n_second, shift) in [(5, 3, 0.0), (20, 4, 1.5), (2, 2, 0.0)] {
         let statistic = Studentized::Difference { first: &first, n_first, second: &second, n_second };
         let request = StudentizedRequest { statistic, ..mean(&first, 2, 0.025, shift) };
@@ -163,8 +191,16 @@ fn size_and_scale_change_nothing() {
     let one = law(LawSpec::Exponential { mean: 1.0 });
     for mean_value in [1e-290, 1e290] {
         let other = law(LawSpec::Exponential { mean: mean_value });
-        let a = simulate(&StudentizedRequest { draws: 20_000, ..mean(&one, 5, 0.025, 0.3) }, &never, &Work::new());
-        let b = simulate(&StudentizedRequest { draws: 20_000, ..mean(&other, 5, 0.025, 0.3) }, &never, &Work::new());
+        let a = simulate(
+            &StudentizedRequest { draws: 20_000, ..mean(&one, 5, 0.025, 0.3) },
+            &never,
+            &Work::new(),
+        );
+        let b = simulate(
+            &StudentizedRequest { draws: 20_000, ..mean(&other, 5, 0.025, 0.3) },
+            &never,
+            &Work::new(),
+        );
         let (a, b) = (a.unwrap(), b.unwrap());
         assert!((a.covered.value - b.covered.value).abs() < 1e-3, "{a:?} {b:?}");
     }

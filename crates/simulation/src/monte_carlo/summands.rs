@@ -87,7 +87,8 @@ impl SampleDrawer {
         };
         let continuous = parts.iter().any(|part| matches!(part, Part::Stretch(_)));
         let error = count as f64 * (law.missing_mass + if continuous { DRAW_ERROR } else { 1e-15 });
-        let scale = law.atoms.iter().map(|atom| (atom.value / unit).abs()).fold((center / unit).abs(), f64::max);
+        let scale =
+            law.atoms.iter().map(|atom| (atom.value / unit).abs()).fold((center / unit).abs(), f64::max);
         let cost = (per_copy * count as f64 + overhead).max(1.0);
         Self { count, parts, split, cost, error: error.min(1.0), scale }
     }
@@ -125,7 +126,11 @@ impl SampleDrawer {
                 }
             }
         }
-        Totals { sum: totals.sum, squares: totals.squares, all_equal: SQUARES && totals.distinct == Distinct::One }
+        Totals {
+            sum: totals.sum,
+            squares: totals.squares,
+            all_equal: SQUARES && totals.distinct == Distinct::One,
+        }
     }
 }
 
@@ -259,7 +264,8 @@ fn counts(masses: &[f64], count: u64) -> Split {
     for index in (0..masses.len()).rev() {
         after[index] = after[index + 1] + masses[index];
     }
-    let shares: Vec<f64> = masses.iter().zip(&after).map(|(mass, rest)| (mass / rest).clamp(0.0, 1.0)).collect();
+    let shares: Vec<f64> =
+        masses.iter().zip(&after).map(|(mass, rest)| (mass / rest).clamp(0.0, 1.0)).collect();
     let first = BinomialCount::new(count, masses[0] / after[0], after[1] / after[0]);
     Split::Counts { first, shares }
 }
@@ -307,7 +313,10 @@ impl ClosedSum {
             }
             ClosedFamily::NegativeBinomial { size, p } => {
                 let odds = (1.0 - p) / p;
-                (WholeSum::NegativeBinomial(rand_distr::Gamma::new(n * size, 1.0).ok()?, odds), n * size * odds)
+                (
+                    WholeSum::NegativeBinomial(rand_distr::Gamma::new(n * size, 1.0).ok()?, odds),
+                    n * size * odds,
+                )
             }
             ClosedFamily::InverseGaussian { mean, shape } => {
                 (WholeSum::InverseGaussian { mean: n * mean, shape: n * n * shape }, n * mean)

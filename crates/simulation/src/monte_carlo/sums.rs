@@ -165,7 +165,11 @@ impl SimulatedSum {
                 // Number of lattice points of the window that count as below.
                 let below = if at_point { nearest + if closed { 1.0 } else { 0.0 } } else { position.ceil() };
                 if below < 0.0 {
-                    return (0, self.cumulative[0], 0.5 * self.cumulative[0] as f64 / self.draws.max(1) as f64);
+                    return (
+                        0,
+                        self.cumulative[0],
+                        0.5 * self.cumulative[0] as f64 / self.draws.max(1) as f64,
+                    );
                 }
                 if below > last as f64 {
                     return self.beyond_window();
@@ -180,7 +184,11 @@ impl SimulatedSum {
                 }
                 let position = (z - from) / width;
                 if position < 0.0 {
-                    return (0, self.cumulative[0], 0.5 * self.cumulative[0] as f64 / self.draws.max(1) as f64);
+                    return (
+                        0,
+                        self.cumulative[0],
+                        0.5 * self.cumulative[0] as f64 / self.draws.max(1) as f64,
+                    );
                 }
                 if position >= last as f64 {
                     return self.beyond_window();
@@ -318,7 +326,8 @@ impl StandardizedSum for SimulatedSum {
 
     fn detail(&self) -> String {
         let plan = &self.plan;
-        let short = if plan.most <= self.draws && plan.most < u64::MAX { ", as many as the cap allows" } else { "" };
+        let short =
+            if plan.most <= self.draws && plan.most < u64::MAX { ", as many as the cap allows" } else { "" };
         format!(
             "simulation of {} sums{short} (seed {}, joint confidence {}), because {}",
             self.draws,

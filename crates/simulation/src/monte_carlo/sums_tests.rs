@@ -20,7 +20,8 @@ fn method(draws: u64) -> Method {
 }
 
 fn build(spec: &SumSpec, draws: u64) -> SimulatedSum {
-    SimulatedSum::build(spec, &method(draws), &PROBES, "a test asked for it", &Work::new()).expect("buildable")
+    SimulatedSum::build(spec, &method(draws), &PROBES, "a test asked for it", &Work::new())
+        .expect("buildable")
 }
 
 fn assert_near(figure: Figure, expected: f64, largest_error: f64) {
@@ -50,7 +51,7 @@ fn exponential_sums_have_the_gamma_law() {
             assert_near(found.kolmogorov, distance, 0.0048);
             for p in [0.001, 0.1, 0.5, 0.9, 0.999] {
                 let exact = (gamma::quantile(n as f64, p) - n as f64) / root;
-                assert_near(sum.quantile(p), exact, 0.5);
+                assert_near(sum.quantile(p), exact, if p > 0.99 { 0.7 } else { 0.1 });
             }
             assert_eq!(sum.jumps(-9.0, 9.0, 10), Some(vec![]));
             let moments = sum.moments();
@@ -116,7 +117,10 @@ fn mostly_zero_sums_jump_where_all_are_zero() {
 #[test]
 fn sums_of_incommensurable_atoms_list_their_jumps() {
     let values = vec![0.0, 1.0, std::f64::consts::SQRT_2];
-    let sum = build(&SumSpec::like_summands(law(LawSpec::Table { values, weights: vec![0.25, 0.25, 0.5] }), 2), 50_000);
+    let sum = build(
+        &SumSpec::like_summands(law(LawSpec::Table { values, weights: vec![0.25, 0.25, 0.5] }), 2),
+        50_000,
+    );
     let jumps = sum.jumps(-8.0, 8.0, 10).unwrap();
     assert_eq!(jumps.len(), 6);
     let masses = [0.0625, 0.125, 0.25, 0.0625, 0.25, 0.25];
@@ -189,7 +193,13 @@ fn cancelled_work_returns() {
 #[test]
 fn large_n_is_bounded_or_refused() {
     let lomax = law(LawSpec::Lomax { shape: 4.5, scale: 1.0 });
-    let refused = SimulatedSum::build(&SumSpec::like_summands(lomax, 1_000_000_000), &method(1000), &[], "", &Work::new());
+    let refused = SimulatedSum::build(
+        &SumSpec::like_summands(lomax, 1_000_000_000),
+        &method(1000),
+        &[],
+        "",
+        &Work::new(),
+    );
     assert!(matches!(refused, Err(SumError::NotAvailable { route: Route::Simulation, .. })));
     // Counts do not care about n.
     let spec = LawSpec::Table { values: vec![0.0, 1.0, 7.0], weights: vec![5.0, 4.0, 1.0] };
@@ -200,17 +210,29 @@ fn large_n_is_bounded_or_refused() {
 
 #[test]
 fn size_and_scale_change_nothing() {
-    let scaled = |mean: f64| build(&SumSpec::like_summands(law(LawSpec::Affine {
-        law: Box::new(LawSpec::Lomax { shape: 4.5, scale: 1.0 }),
-        add: 0.0,
-        multiply: mean,
-    }), 4), 20_000);
+    let scaled = |mean: f64| {
+        build(
+            &SumSpec::like_summands(
+                law(LawSpec::Affine {
+                    law: Box::new(LawSpec::Lomax { shape: 4.5, scale: 1.0 }),
+                    add: 0.0,
+                    multiply: mean,
+                }),
+                4,
+            ),
+            20_000,
+        )
+    };
     let one = scaled(1.0);
     for factor in [1e-280, 1e280, -3.0] {
         let other = scaled(factor);
         let sign = factor.signum();
         for z in PROBES {
-            let (a, b) = if sign > 0.0 { (one.at_or_below(z), other.at_or_below(z)) } else { (one.at_or_below(z), other.at_or_above(-z)) };
+            let (a, b) = if sign > 0.0 {
+                (one.at_or_below(z), other.at_or_below(z))
+            } else {
+                (one.at_or_below(z), other.at_or_above(-z))
+            };
             assert!((a.value - b.value).abs() < 2e-3, "{factor}, {z}: {a:?} {b:?}");
         }
     }

@@ -48,8 +48,10 @@ impl Layout {
         places.sort_by(f64::total_cmp);
         places.dedup_by(|next, kept| *next - *kept <= tolerance);
         let index = |z: f64| ((z + reach) / width) as usize;
-        let spans: Vec<_> =
-            places.iter().map(|place| (index(place - 2.0 * tolerance), index(place + 2.0 * tolerance))).collect();
+        let spans: Vec<_> = places
+            .iter()
+            .map(|place| (index(place - 2.0 * tolerance), index(place + 2.0 * tolerance)))
+            .collect();
         let mut touched = vec![false; GRID_CELLS];
         for &(first, last) in &spans {
             touched[first..=last].fill(true);
