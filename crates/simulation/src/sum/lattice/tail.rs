@@ -70,10 +70,10 @@ impl Tail {
                 if !beyond(k, region.far) {
                     break;
                 }
-                if let Some(last) = region.tails.last() {
-                    if last.value < 1e-300 {
-                        return Figure::bound(0.0, last.value + last.error);
-                    }
+                if let Some(last) = region.tails.last()
+                    && last.value < 1e-300
+                {
+                    return Figure::bound(0.0, last.value + last.error);
                 }
             }
             let start = regions.last().map_or(self.sign * 4.0 / self.sd, |region| region.theta);
