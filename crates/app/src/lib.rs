@@ -1,1 +1,4 @@
 //! The program: window and command.
+
+pub mod command;
+pub mod files;
