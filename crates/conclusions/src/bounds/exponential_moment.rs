@@ -74,7 +74,7 @@ fn piece_terms(piece: &Piece, t: f64, mean: f64, terms: &mut Vec<(f64, f64)>) ->
     if unbounded {
         extend(piece, t, &mut panels)?;
     }
-    let rule = gaussgap_simulation::law::quadrature::gauss_legendre(20);
+    let rule = gaussgap_simulation::law::gauss_legendre(20);
     for (low, high) in panels {
         let (middle, half) = (0.5 * (low + high), 0.5 * (high - low));
         for (node, weight) in &rule {

@@ -54,10 +54,12 @@ pub(crate) fn evaluate_studentized(
         ([first, second], [n_first, n_second]) => {
             Studentized::Difference { first, n_first: *n_first, second, n_second: *n_second }
         }
-        _ => Studentized::Mean { law: &laws[0], n: counts[0] },
+        _ => Studentized::Mean { law: &laws[0], n: counts.iter().sum() },
     };
-    let shift = match claim {
-        Claim::Test { shift: Some(shift), .. } => shift,
+    // A mean is shifted in units of σ, a difference in units of its own standard deviation.
+    let shift = match (claim, statistic) {
+        (Claim::Test { shift: Some(shift), .. }, Studentized::Mean { .. }) => shift,
+        (Claim::Test { shift: Some(shift), .. }, _) => shift * group_ratio(prepared, counts),
         _ => 0.0,
     };
     let request = StudentizedRequest {
