@@ -13,6 +13,7 @@ mod route;
 mod steps;
 mod supremum;
 mod twofold;
+pub mod contour;
 
 use crate::figure::Figure;
 use crate::law::Law;
