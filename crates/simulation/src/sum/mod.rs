@@ -3,6 +3,8 @@
 //! [`build`] picks the best route (closed form, lattice, inversion, simulation) and says which it took. All
 //! routes answer the same questions through [`StandardizedSum`], always in standard units z.
 
+pub mod inversion;
+
 use crate::figure::Figure;
 use crate::law::Law;
 use crate::work::{Cancelled, Work};
