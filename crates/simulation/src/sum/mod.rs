@@ -5,15 +5,16 @@
 
 pub mod closed_form;
 mod continuous;
+pub mod contour;
 #[cfg(test)]
 mod counted_checks;
 mod counting;
+pub mod inversion;
 pub mod lattice;
 mod route;
 mod steps;
 mod supremum;
 mod twofold;
-pub mod contour;
 
 use crate::figure::Figure;
 use crate::law::Law;
