@@ -8,6 +8,7 @@
 //! - continuous pieces: [`super::tabulated`].
 
 use super::alias::{AliasTable, BinomialCount, draw_binomial};
+use super::streams::Stream;
 use super::tabulated::{DRAW_ERROR, TabulatedQuantile};
 use crate::law::{ClosedFamily, ClosedForm, Law, Sampler};
 use rand::Rng;
@@ -95,7 +96,7 @@ impl SampleDrawer {
 
     /// Draws the totals. `SQUARES` false leaves `squares` and `all_equal` unset, for speed.
     #[inline]
-    pub(crate) fn draw<const SQUARES: bool>(&self, random: &mut impl Rng) -> Totals {
+    pub(crate) fn draw<const SQUARES: bool>(&self, random: &mut Stream) -> Totals {
         let mut totals = Running::default();
         match &self.split {
             Split::One => {
@@ -173,7 +174,7 @@ impl Part {
     }
 
     #[inline]
-    fn draw<const SQUARES: bool>(&self, copies: u64, random: &mut impl Rng, totals: &mut Running) {
+    fn draw<const SQUARES: bool>(&self, copies: u64, random: &mut Stream, totals: &mut Running) {
         if copies == 0 {
             return;
         }
@@ -199,13 +200,7 @@ impl Part {
                 totals.squares += squares;
             }
             Self::Stretch(table) => {
-                let (mut sum, mut squares) = (0.0, 0.0);
-                table.draw_each(copies, random, |value| {
-                    sum += value;
-                    if SQUARES {
-                        squares += value * value;
-                    }
-                });
+                let (sum, squares) = table.totals::<SQUARES>(copies, random);
                 totals.sum += sum;
                 totals.squares += squares;
                 // Two draws of a continuous piece differ with probability 1; so do a draw and an atom.
