@@ -37,6 +37,13 @@ impl Piece {
         (self.low, self.high) == self.density.support()
     }
 
+    /// sup of r with E max(X, 0)^r < ∞ on the piece, and the same for −X.
+    pub fn tail_indices(&self) -> (f64, f64) {
+        let upper = if self.high.is_finite() { f64::INFINITY } else { self.density.upper_tail_index() };
+        let lower = if self.low.is_finite() { f64::INFINITY } else { self.density.lower_tail_index() };
+        if self.multiply > 0.0 { (upper, lower) } else { (lower, upper) }
+    }
+
     /// Probability carried by the piece.
     pub fn mass(&self) -> f64 {
         self.factor * self.between(self.low, self.high)
@@ -153,7 +160,7 @@ impl Piece {
     /// quantiles where the piece is a far-off part of the density, and its ends where they are finite.
     pub fn panel_points(&self) -> Vec<f64> {
         let mut points: Vec<f64> =
-            self.density.skeleton().into_iter().filter(|&y| y > self.low && y < self.high).collect();
+            self.density.skeleton().into_iter().filter(|&y| y >= self.low && y <= self.high).collect();
         points.extend(self.density.breakpoints().into_iter().filter(|&y| y > self.low && y < self.high));
         if !self.is_whole() {
             for level in LEVELS {
@@ -172,8 +179,6 @@ impl Piece {
         }
         let mut points = tidy(points);
         if support_low.is_finite() {
-            let smallest = support_low + f64::MIN_POSITIVE;
-            points.retain(|&y| y >= support_low && (y >= smallest || !singular_low));
             points = grade_from(&points, support_low, 4.0);
         }
         points
