@@ -25,6 +25,20 @@ fn main() {
         ("lognormal", lognormal),
         ("exponential", LawSpec::Exponential { mean: 1.0 }),
         ("lomax", LawSpec::Lomax { shape: 4.5, scale: 1.0 }),
+        ("gamma", LawSpec::Gamma { shape: 0.4, scale: 1.0 }),
+        ("beta", LawSpec::Beta { a: 0.5, b: 3.0, low: None, high: None }),
+        ("student-t", LawSpec::StudentT { df: 5.0, location: None, scale: None }),
+        (
+            "formula",
+            LawSpec::Formula { density: "exp(-x) * (1 + sin(x)^2)".to_owned(), low: 0.0, high: 40.0 },
+        ),
+        (
+            "histogram",
+            LawSpec::Histogram {
+                edges: (0..=1000).map(|i| 0.01 * f64::from(i)).collect(),
+                weights: (0..1000).map(|i| f64::from(1 + i % 7)).collect(),
+            },
+        ),
         ("capped lognormal", mostly_zero),
         ("5000 atoms", LawSpec::Table { weights: vec![1.0; counts.len()], values: counts }),
     ];
