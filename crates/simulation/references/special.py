@@ -152,8 +152,162 @@ def gamma_values():
             put("gamma_density", [a, x], d)
 
 
+# --- beta -----------------------------------------------------------------------------------------------------
+def beta_ln(a, b):
+    return mp.loggamma(a) + mp.loggamma(b) - mp.loggamma(a + b)
+
+
+def beta_density(a, b, x, y):
+    return mp.exp((a - 1) * mp.log(x) + (b - 1) * mp.log(y) - beta_ln(a, b))
+
+
+def beta_series(a, b, x, y):
+    """I_x(a, b) = x^a y^b/(a B) sum (a+b)_j/(a+1)_j x^j: all terms positive."""
+    term = total = mpf(1)
+    j = 0
+    while term > total * mpf(10) ** -45:
+        term *= (a + b + j) / (a + 1 + j) * x
+        total += term
+        j += 1
+        if j > 400000:
+            raise ValueError("slow")
+    return total * mp.exp(a * mp.log(x) + b * mp.log(y) - mp.log(a) - beta_ln(a, b))
+
+
+def beta_lower(a, b, x, y):
+    """I_x(a, b), x at or below the mean or a small."""
+    if max(a, b) < 3000:
+        return beta_series(a, b, x, y)
+    slope = (a - 1) / x - (b - 1) / y
+    curvature = (a - 1) / x**2 + (b - 1) / y**2
+    length = min(x, 240 / (abs(slope) + mp.sqrt(slope**2 + 240 * curvature)) * mpf("1.3"))
+    if min(a, b) < 100:  # one large parameter: gamma-like, a power at the end; split geometrically
+        f = lambda h: beta_density(a, b, x - h, y + h)
+        scale = f(mpf(0))
+        points = [mpf(0)] + [length * mpf(2) ** (-k) for k in range(24, -1, -1)]
+        return scale * mp.quad(lambda h: f(h) / scale, points, maxdegree=8)
+    return integral(lambda t: beta_density(a, b, t, 1 - t), x - length, x)
+
+
+def beta_tails(a, b, x):
+    a, b, x = mpf(a), mpf(b), mpf(x)
+    y = 1 - x
+    if b * x <= a * y:
+        p = beta_lower(a, b, x, y)
+        return p, 1 - p
+    q = beta_lower(b, a, y, x)
+    return 1 - q, q
+
+
+def beta_values():
+    cases = []
+    for a, b in [(1e-3, 1e-3), (1e-3, 0.7), (1e-3, 5), (1e-3, 1e3), (0.4, 0.9), (0.5, 40), (0.5, 2000), (1, 1), (1, 7), (1.2, 3.4), (8, 2),
+                 (30, 55), (300, 1.5), (999, 1001), (2000, 150)]:
+        for x in [1e-250, 1e-30, 1e-6, 1e-3, 0.02, 0.3, 0.499, 0.501, 0.65, 0.72, 0.9, 0.99, 1 - 1e-6, 1 - 1e-12]:
+            cases.append((a, b, x))
+    for a, b in [(1e4, 1e4), (1e6, 3e5), (1e9, 1e9), (1e9, 2e3), (12, 1e9), (1e9, 1.5)]:
+        mean, sd = a / (a + b), (a * b / (a + b) ** 3) ** 0.5
+        for k in [-32, -11, -4, -1, -0.01, 0, 0.3, 2, 7, 20, 33]:
+            x = mean + k * sd
+            if 0 < x < 1:
+                cases.append((a, b, x))
+    for a, b, x in cases:
+        try:
+            p, q = beta_tails(a, b, x)
+        except ValueError:
+            print("skipped", a, b, x, file=sys.stderr)
+            continue
+        if p > 1e-300:
+            put("beta_below", [a, b, x], p)
+        if q > 1e-300:
+            put("beta_above", [a, b, x], q)
+        d = beta_density(mpf(a), mpf(b), mpf(x), 1 - mpf(x))
+        if 1e-300 < d < 1e300:
+            put("beta_density", [a, b, x], d)
+
+
+# --- student --------------------------------------------------------------------------------------------------
+def student_density(v, t):
+    return mp.exp(mp.loggamma((v + 1) / 2) - mp.loggamma(v / 2) - (v + 1) / 2 * mp.log1p(t * t / v)) / mp.sqrt(mp.pi * v)
+
+
+def student_above(v, t):
+    """Incomplete beta function; quadrature where the law is as good as normal and mpmath's series fail."""
+    v, t = mpf(v), mpf(t)
+    if v <= 1e5:
+        return mp.betainc(v / 2, mpf(1) / 2, 0, v / (v + t * t), regularized=True) / 2
+    return integral(lambda u: student_density(v, u), t, t + min(24, 150 / max(t, mpf(1))), 48)
+
+
+def student_values():
+    for v in [0.5, 1, 2.7, 5, 30, 400, 999, 1001, 1e5, 1e8, 1e12]:
+        for t in [1e-8, 0.01, 0.6, 1.4, 3, 9, 25, 33, 1e3, 1e8]:
+            d = student_density(mpf(v), mpf(t))
+            if d < 1e-300:
+                continue
+            put("student_density", [v, t], d)
+            q = student_above(v, t)
+            if q > 1e-300:
+                put("student_above", [v, t], q)
+
+
+# --- discrete -------------------------------------------------------------------------------------------------
+def discrete_values():
+    for n, p, ks in [(10, 0.2, [0, 2, 5, 10]), (3000, 0.001, [0, 3, 17, 60]), (500, 0.97, [300, 470, 485, 499, 500]), (40, 1e-12, [0, 1, 3]),
+                     (30, 1 - 1e-9, [28, 29, 30]), (2000, 0.5, [500, 999, 1000, 1300])]:
+        p = mpf(p)
+        masses = [mp.binomial(n, k) * p**k * (1 - p) ** (n - k) for k in range(n + 1)]
+        for k in ks:
+            put("binomial_mass", [n, p, k], masses[k])
+            put("binomial_at_or_below", [n, p, k], mp.fsum(masses[: k + 1]))
+            if k < n:
+                put("binomial_above", [n, p, k], mp.fsum(masses[k + 1 :]))
+    for rate, ks in [(0.003, [0, 1, 4]), (3.5, [0, 2, 9, 60]), (200, [60, 180, 200, 290, 600])]:
+        m = mpf(rate)
+        mass = lambda k: mp.exp(-m + k * mp.log(m) - mp.loggamma(k + 1))
+        for k in ks:
+            put("poisson_mass", [rate, k], mass(k))
+            put("poisson_at_or_below", [rate, k], mp.fsum(mass(j) for j in range(k + 1)))
+            put("poisson_above", [rate, k], mp.fsum(mass(j) for j in range(k + 1, k + 900)))
+    for size, p, ks in [(0.25, 0.4, [0, 1, 20, 300]), (1, 0.05, [0, 13, 200, 4000]), (37.5, 0.3, [0, 20, 85, 300]), (3, 0.999999, [0, 1, 4]),
+                        (800, 0.7, [150, 340, 500])]:
+        s, pp = mpf(size), mpf(p)
+        mass = lambda k: mp.exp(mp.loggamma(s + k) - mp.loggamma(s) - mp.loggamma(k + 1) + s * mp.log(pp) + k * mp.log1p(-pp))
+        for k in ks:
+            put("negative_binomial_mass", [size, p, k], mass(k))
+            put("negative_binomial_at_or_below", [size, p, k], mp.fsum(mass(j) for j in range(k + 1)))
+            put("negative_binomial_above", [size, p, k], mp.fsum(mass(j) for j in range(k + 1, k + 3000)))
+
+
+# --- inverse Gaussian -----------------------------------------------------------------------------------------
+def inverse_gaussian_values():
+    mp.dps = 900
+    for mean, shape in [(1, 1), (2.5, 0.01), (3, 40), (1, 1e4), (0.7, 1e9), (1, 1e15), (50, 0.2)]:
+        m, s = mpf(mean), mpf(shape)
+        sd = (mean / shape) ** 0.5
+        xs = [float(mean * r) for r in (3e-4, 0.01, 0.1, 0.5, 0.98, 1, 1.3, 3, 20, 300)]
+        xs += [float(mean * (1 + k * sd)) for k in (-20, -6, -1.3, -0.01, 0.02, 1, 5, 12, 30)]
+        for x in xs:
+            if x <= 0:
+                continue
+            t = mpf(x)
+            r = mp.sqrt(s / t)
+            tail = lambda z: mp.erfc(z / mp.sqrt(2)) / 2
+            al, be = r * (t / m - 1), r * (t / m + 1)
+            if al * al > 1400:
+                continue
+            second = mp.exp(2 * s / m) * tail(be)
+            p, q = tail(-al) + second, tail(al) - second
+            if p > 1e-300:
+                put("inverse_gaussian_at_or_below", [mean, shape, x], p)
+            if q > 1e-300:
+                put("inverse_gaussian_above", [mean, shape, x], q)
+            put("inverse_gaussian_density", [mean, shape, x], mp.sqrt(s / (2 * mp.pi * t**3)) * mp.exp(-al * al / 2))
+    mp.dps = 60
+
+
 if __name__ == "__main__":
     wanted = sys.argv[1:]
-    for part in [normal_values, error_values, elementary_values, gamma_values]:
+    for part in [normal_values, error_values, elementary_values, gamma_values, beta_values, student_values, discrete_values, inverse_gaussian_values]:
         if not wanted or part.__name__ in wanted:
             part()

@@ -109,3 +109,20 @@ fn near_origin(z: Complex64) -> Complex64 {
 pub(crate) fn erf_slope(x: f64) -> f64 {
     2.0 * FRAC_1_SQRT_PI * exp_minus_square(x)
 }
+
+/// −erfcx′(v) = 2/√π − 2v·erfcx(v) > 0, without cancellation for large v, where it is ≈ 1/(√π v²).
+///
+/// With √π erfcx(v) = 1/(v + r), r the tail of Laplace's fraction, it is (2/√π)·r/(v + r) from v = 2 on.
+pub(crate) fn minus_erfcx_slope(v: f64) -> f64 {
+    if v < 2.0 {
+        return 2.0 * FRAC_1_SQRT_PI - 2.0 * v * erfcx(v);
+    }
+    // Enough terms for full accuracy: about 200/v².
+    let terms = (260.0 / (v * v)).ceil().clamp(4.0, 80.0) as u32 + 8;
+    let mut tail = v;
+    for k in (2..=terms).rev() {
+        tail = v + 0.5 * f64::from(k) / tail;
+    }
+    let r = 0.5 / tail;
+    2.0 * FRAC_1_SQRT_PI * r / (v + r)
+}

@@ -51,8 +51,8 @@ pub(crate) fn on_positive_axis(target: f64, start: f64, tail: Tail, probe: impl 
         } else {
             x * step.min(700.0).exp()
         };
-        if step.is_finite() && step < 1e-9 && round > 0 {
-            // Quadratic convergence: the step just taken lands on the last bits.
+        if step < 1e-8 && difference.abs() < 1e-8 && round > 0 {
+            // Quadratic convergence in both scales: the step just taken lands on the last bits.
             return next.clamp(low, high);
         }
         x = if next > low && next < high && round < 60 { next } else { between(low, high) };
