@@ -24,7 +24,7 @@ pub(crate) fn assess(scenario: &Scenario, effort: Effort, work: &Work) -> Result
     work.set_fraction(0.0);
     let prepared = Prepared::new(scenario).map_err(AssessError::Scenario)?;
     if !prepared.has_variance() {
-        return Ok(no_variance(&prepared, start));
+        return no_variance(&prepared, effort, start, work);
     }
     let spec = prepared.sum_spec(&prepared.planned);
     let sum = build(&spec, &prepared.method(8.0), work).map_err(refused)?;
@@ -174,10 +174,11 @@ fn method_facts(
 }
 
 /// The report on a law without a finite variance: the claim fails, and no figure exists.
-fn no_variance(prepared: &Prepared, start: Instant) -> Report {
+fn no_variance(prepared: &Prepared, effort: Effort, start: Instant, work: &Work) -> Result<Report, AssessError> {
     let scenario = prepared.scenario;
     let claim = claims::without_figure(&scenario.claim, &scenario.tolerance, None);
-    Report {
+    let remedies = if effort.remedies { remedies::without_variance(prepared, work)? } else { Vec::new() };
+    Ok(Report {
         format: REPORT_FORMAT.to_owned(),
         program: program(),
         scenario: report_scenario(scenario),
@@ -202,11 +203,11 @@ fn no_variance(prepared: &Prepared, start: Instant) -> Report {
             last_failing: None,
             checked: None,
         },
-        remedies: remedies::without_variance(prepared),
+        remedies,
         rules_of_thumb: Vec::new(),
         growth: Growth::default(),
         curve: Curve::default(),
-    }
+    })
 }
 
 /// The moments of a sum without a variance: its mean, where it exists.

@@ -139,7 +139,7 @@ impl<'a> Prepared<'a> {
             (Source::Like { .. }, Statistic::Mean) => moments.n as f64,
             _ => 1.0,
         };
-        Scale { mean: moments.mean, sd: moments.sd, divisor, n: moments.n as f64 }
+        Scale { mean: moments.mean, sd: moments.sd, divisor }
     }
 
     /// How to compute the distribution: the scenario's method, reaching every z the report will ask for.
@@ -185,8 +185,6 @@ pub(crate) struct Scale {
     mean: f64,
     sd: f64,
     divisor: f64,
-    /// Number of summands.
-    pub n: f64,
 }
 
 impl Scale {

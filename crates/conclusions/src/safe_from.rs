@@ -22,7 +22,7 @@ use rayon::prelude::*;
 use std::time::{Duration, Instant};
 
 /// Time the whole search may take.
-const ALLOWED: Duration = Duration::from_secs(7);
+const ALLOWED: Duration = Duration::from_secs(4);
 
 /// At most this many simulated evaluations; the confidence is divided among them.
 const MOST_SIMULATED: u64 = 24;
