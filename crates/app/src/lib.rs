@@ -2,3 +2,4 @@
 
 pub mod command;
 pub mod files;
+pub mod shell;
