@@ -1,10 +1,10 @@
 //! The distance over n: computed, bounded and predicted, on a logarithmic grid.
 
 use crate::bounds::{berry_esseen, leading_term};
-use crate::exact::build_exact;
+
 use crate::prepared::Prepared;
 use crate::report::Growth;
-use gaussgap_simulation::sum::SumError;
+use gaussgap_simulation::sum::{Method, SumError, build_exact};
 use gaussgap_simulation::work::{Cancelled, Work};
 use rayon::prelude::*;
 use std::time::{Duration, Instant};
@@ -81,7 +81,7 @@ fn row(prepared: &Prepared, n: u64, work: &Work) -> Result<Row, Cancelled> {
     let Some(counts) = prepared.counts_at(n) else { return Ok(empty) };
     let spec = prepared.sum_spec(&counts);
     let bound = berry_esseen(&spec).map(|bound| bound.value);
-    match build_exact(&spec, 8.0, work) {
+    match build_exact(&spec, &Method::default(), work) {
         Ok(sum) => {
             let distance = Some(sum.kolmogorov().kolmogorov.value);
             Ok(Row { n, distance, bound, leading: leading_term(&spec, sum.lattice_span()) })

@@ -122,7 +122,10 @@ mod tests {
     fn lattice_expansion_of_a_binomial() {
         let (n, p) = (80.0_f64, 0.3_f64);
         let sd = (n * p * (1.0 - p)).sqrt();
-        let shape = Shape { skewness: (1.0 - 2.0 * p) / sd, excess_kurtosis: (1.0 - 6.0 * p * (1.0 - p)) / (sd * sd) };
+        let shape = Shape {
+            skewness: (1.0 - 2.0 * p) / sd,
+            excess_kurtosis: (1.0 - 6.0 * p * (1.0 - p)) / (sd * sd),
+        };
         let worst = (0..=80_u64)
             .map(|k| {
                 let z = (k as f64 + 0.5 - n * p) / sd;

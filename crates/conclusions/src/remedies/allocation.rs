@@ -9,7 +9,8 @@ use gaussgap_simulation::work::{Cancelled, Work};
 
 /// The remedy, for two groups that are not balanced yet.
 pub(super) fn remedy(prepared: &Prepared, work: &Work) -> Result<Option<Remedy>, Cancelled> {
-    let (Source::Groups { .. }, [first, second]) = (&prepared.scenario.source, prepared.planned.as_slice()) else {
+    let (Source::Groups { .. }, [first, second]) = (&prepared.scenario.source, prepared.planned.as_slice())
+    else {
         return Ok(None);
     };
     let total = first + second;

@@ -17,11 +17,14 @@ const LEAST_SKEWNESS: f64 = 0.5;
 
 /// The mildest cap that holds, or the mildest and the hardest one tried where none does.
 pub(super) fn remedies(prepared: &Prepared, work: &Work) -> Result<Vec<Remedy>, Cancelled> {
-    let (Source::Like { law: spec, .. }, [law]) = (&prepared.scenario.source, prepared.laws.as_slice()) else {
+    let (Source::Like { law: spec, .. }, [law]) = (&prepared.scenario.source, prepared.laws.as_slice())
+    else {
         return Ok(Vec::new());
     };
     // A cap changes the number a threshold asks about; there it is no remedy.
-    if matches!(prepared.scenario.claim, Claim::Threshold { .. }) || law.atoms.len() == 2 && law.pieces.is_empty() {
+    if matches!(prepared.scenario.claim, Claim::Threshold { .. })
+        || law.atoms.len() == 2 && law.pieces.is_empty()
+    {
         return Ok(Vec::new());
     }
     let moments = law.moments;
@@ -43,7 +46,8 @@ pub(super) fn remedies(prepared: &Prepared, work: &Work) -> Result<Vec<Remedy>, 
         if capped.moments.variance.is_none_or(|variance| variance == 0.0) {
             continue;
         }
-        let Some(facts) = claim_with(prepared, std::slice::from_ref(&capped), &prepared.planned, work)? else {
+        let Some(facts) = claim_with(prepared, std::slice::from_ref(&capped), &prepared.planned, work)?
+        else {
             continue;
         };
         let side = if downwards { "from below at" } else { "at" };

@@ -37,7 +37,8 @@ pub(super) fn remedies(prepared: &Prepared, sum: &dyn StandardizedSum, claim: &C
         if is_test { complement(inside) } else { inside }
     };
     let row = |name: &str, low: f64, high: f64, note: &str| {
-        let limits = format!("{note}: limits at {} and {} instead of ± {}", number(low), number(high), number(c));
+        let limits =
+            format!("{note}: limits at {} and {} instead of ± {}", number(low), number(high), number(c));
         near(name, actual(low, high), claim.nominal, claim.allowed, limits)
     };
     let mut rows = Vec::new();

@@ -45,7 +45,8 @@ fn largest_gap(sum: &dyn StandardizedSum, shape: Shape) -> Figure {
         let (at, below) = (sum.at_or_below(z), sum.below(z));
         ((at.value - expansion).abs().max((below.value - expansion).abs()), at.error.max(below.error))
     };
-    let edges = (0..=CELLS).map(|index| REACH * (2.0 * index as f64 / CELLS as f64 - 1.0)).collect::<Vec<_>>();
+    let edges =
+        (0..=CELLS).map(|index| REACH * (2.0 * index as f64 / CELLS as f64 - 1.0)).collect::<Vec<_>>();
     let values = edges.iter().map(|z| gap(*z)).collect::<Vec<_>>();
     let mut largest = values.iter().map(|(value, _)| *value).fold(0.0, f64::max);
     let mut error = values.iter().map(|(_, error)| *error).fold(0.0, f64::max);

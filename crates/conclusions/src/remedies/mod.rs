@@ -13,14 +13,14 @@ mod proportion;
 mod skewness;
 
 use crate::claims::{self, StudentizedBudget, evaluate_studentized, is_studentized, state};
-use crate::exact::build_exact;
+
 use crate::prepared::Prepared;
 use crate::report::{ClaimFacts, Remedy, State, Verdict};
 use crate::scenario::{Claim, Source};
 use crate::words::numbers::whole;
 use gaussgap_simulation::figure::Figure;
 use gaussgap_simulation::law::Law;
-use gaussgap_simulation::sum::{StandardizedSum, SumError};
+use gaussgap_simulation::sum::{Method, StandardizedSum, SumError, build_exact};
 use gaussgap_simulation::work::{Cancelled, Work};
 
 /// Share of the allowed probability of error spent on all simulated remedies together.
@@ -79,7 +79,12 @@ fn near(name: &str, actual: Figure, nominal: f64, allowed: f64, note: String) ->
 }
 
 /// The claim computed for other laws or other counts; `None` where no route reaches it.
-fn claim_with(prepared: &Prepared, laws: &[Law], counts: &[u64], work: &Work) -> Result<Option<ClaimFacts>, Cancelled> {
+fn claim_with(
+    prepared: &Prepared,
+    laws: &[Law],
+    counts: &[u64],
+    work: &Work,
+) -> Result<Option<ClaimFacts>, Cancelled> {
     let changed = Prepared { scenario: prepared.scenario, laws: laws.to_vec(), planned: counts.to_vec() };
     let result = if is_studentized(&prepared.scenario.claim) {
         let n = counts.iter().sum::<u64>().max(1);
@@ -90,7 +95,7 @@ fn claim_with(prepared: &Prepared, laws: &[Law], counts: &[u64], work: &Work) ->
         };
         evaluate_studentized(&changed, laws, counts, &budget, work).map(|(facts, _)| facts)
     } else {
-        build_exact(&changed.sum_spec(counts), 8.0, work)
+        build_exact(&changed.sum_spec(counts), &Method::default(), work)
             .map(|sum| claims::evaluate(&changed, counts, sum.as_ref()))
     };
     match result {

@@ -76,7 +76,12 @@ impl Steps {
 }
 
 /// The rows for a probability: an approximation of P(Z ≤ z) and of P(Z > z) each, applied to the event.
-fn probabilities(prepared: &Prepared, sum: &dyn StandardizedSum, actual: Figure, event: Event) -> Vec<Remedy> {
+fn probabilities(
+    prepared: &Prepared,
+    sum: &dyn StandardizedSum,
+    actual: Figure,
+    event: Event,
+) -> Vec<Remedy> {
     let steps = Steps::of(prepared, sum);
     // Where a continuous approximation is read: halfway between the lattice points.
     let above_at = |z: f64| steps.as_ref().map_or(z, |steps| steps.middle_above(z));
@@ -93,10 +98,7 @@ fn probabilities(prepared: &Prepared, sum: &dyn StandardizedSum, actual: Figure,
         }
     };
     if steps.is_some() {
-        push(
-            "continuity correction",
-            apply(&|z| Some(normal::at_or_below(z)), &|z| Some(normal::above(z))),
-        );
+        push("continuity correction", apply(&|z| Some(normal::at_or_below(z)), &|z| Some(normal::above(z))));
     }
     let moments = sum.moments();
     if let (Some(skewness), Some(excess_kurtosis)) = (moments.skewness, moments.excess_kurtosis) {
@@ -114,7 +116,10 @@ fn probabilities(prepared: &Prepared, sum: &dyn StandardizedSum, actual: Figure,
     push("saddlepoint approximation", apply(&|z| saddlepoint(z).map(|above| 1.0 - above), &saddlepoint));
     rows.push(exact_row(
         actual,
-        format!("{}; nothing is approximated", chance(actual.value, percent_decimals(0.001, actual.error, 0.001))),
+        format!(
+            "{}; nothing is approximated",
+            chance(actual.value, percent_decimals(0.001, actual.error, 0.001))
+        ),
         prepared.scenario.tolerance.allowed(actual.value),
     ));
     rows

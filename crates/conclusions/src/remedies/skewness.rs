@@ -30,7 +30,11 @@ const MOST_SAMPLES: u64 = 400_000;
 const FEWEST_SAMPLES: u64 = 4 * BLOCK;
 
 /// The rows, for an interval for the mean of like summands with estimated spread.
-pub(super) fn remedies(prepared: &Prepared, claim: &ClaimFacts, work: &Work) -> Result<Vec<Remedy>, Cancelled> {
+pub(super) fn remedies(
+    prepared: &Prepared,
+    claim: &ClaimFacts,
+    work: &Work,
+) -> Result<Vec<Remedy>, Cancelled> {
     let (Claim::Interval { level, sides, spread: Spread::Estimated }, Source::Like { n, .. }, [law]) =
         (prepared.scenario.claim, &prepared.scenario.source, prepared.laws.as_slice())
     else {
@@ -45,7 +49,8 @@ pub(super) fn remedies(prepared: &Prepared, claim: &ClaimFacts, work: &Work) -> 
         z: critical_value(1.0 - level, sides),
     };
     let counts = simulate(law, *n, samples, prepared.scenario.method.seed, limits, work)?;
-    let risk = 1.0 - share_of_confidence(prepared.scenario.method.confidence, REMEDY_SHARE / f64::from(MOST_SIMULATED));
+    let risk = 1.0
+        - share_of_confidence(prepared.scenario.method.confidence, REMEDY_SHARE / f64::from(MOST_SIMULATED));
     let row = |name: &str, [low, high]: [u64; 2], note: &str| {
         // Two figures share the risk of this row.
         let low = if sides == Sides::Lower { NEVER } else { clopper_pearson(low, samples, risk / 2.0) };
@@ -55,7 +60,11 @@ pub(super) fn remedies(prepared: &Prepared, claim: &ClaimFacts, work: &Work) -> 
     };
     Ok(vec![
         row("Johnson's skewness-corrected interval", counts.johnson, "shifts the t-interval by m₃/(6s²n)"),
-        row("Hall's transformed interval", counts.hall, "straightens the t-statistic by a cubic in the sample skewness"),
+        row(
+            "Hall's transformed interval",
+            counts.hall,
+            "straightens the t-statistic by a cubic in the sample skewness",
+        ),
     ])
 }
 
@@ -73,7 +82,14 @@ struct Counts {
     hall: [u64; 2],
 }
 
-fn simulate(law: &Law, n: u64, samples: u64, seed: u64, limits: Limits, work: &Work) -> Result<Counts, Cancelled> {
+fn simulate(
+    law: &Law,
+    n: u64,
+    samples: u64,
+    seed: u64,
+    limits: Limits,
+    work: &Work,
+) -> Result<Counts, Cancelled> {
     let mean = law.moments.mean.unwrap_or(0.0);
     let scale = law.moments.variance.unwrap_or(1.0).sqrt();
     (0..samples / BLOCK)
@@ -169,7 +185,8 @@ mod tests {
         let covered = 1.0 - (counts.hall[0] + counts.hall[1]) as f64 / samples as f64;
         assert!((covered - 0.933).abs() < 0.005, "{covered}");
         let one = rayon::ThreadPoolBuilder::new().num_threads(1).build().expect("a pool");
-        let again = one.install(|| simulate(&law, 30, samples, 7, limits, &Work::new())).expect("not cancelled");
+        let again =
+            one.install(|| simulate(&law, 30, samples, 7, limits, &Work::new())).expect("not cancelled");
         assert_eq!(counts.hall, again.hall);
         assert_eq!(counts.johnson, again.johnson);
     }
