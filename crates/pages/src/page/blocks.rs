@@ -1,7 +1,8 @@
 //! The blocks of text below the figures: tails, remedies and rules of thumb, the law's facts, cautions.
 
 use super::canvas::{Anchor, Canvas, Rect};
-use super::table::{Column, Table, heading};
+use super::law_picture;
+use super::table::{Column, HEADING_ROOM, Table, heading};
 use super::text::{Font, wrapped};
 use crate::numbers::{error_only, figure_in, number, optional};
 use gaussgap_conclusions::report::{Report, Summand, TailRow};
@@ -111,8 +112,24 @@ pub(super) fn remedies(canvas: &mut Canvas, area: Rect, report: &Report) {
     table.draw(canvas, Rect { top: bottom, ..area });
 }
 
+/// The law's facts, its picture where there is room, and the cautions.
+pub(super) fn law_and_cautions(canvas: &mut Canvas, area: Rect, report: &Report) {
+    let mut bottom = law(canvas, area, report);
+    let notes = notes(report);
+    let needed = HEADING_ROOM + 14.0 + cautions_height(&notes, area.width(), Font::regular(12.0)).max(20.0);
+    let room = (area.bottom - bottom - 8.0 - needed).min(law_picture::MOST);
+    if room >= law_picture::LEAST
+        && let Some(bars) = law_picture::bars(report)
+    {
+        let picture = Rect { top: bottom + 8.0, bottom: bottom + 8.0 + room, ..area };
+        let unit = report.scenario.quantity.as_ref().and_then(|quantity| quantity.unit.as_deref());
+        bottom = law_picture::draw(canvas, picture, &bars, unit);
+    }
+    cautions(canvas, Rect { top: bottom + 14.0, ..area }, &notes);
+}
+
 /// What is known of the law of one summand.
-pub(super) fn law(canvas: &mut Canvas, area: Rect, report: &Report) -> f64 {
+fn law(canvas: &mut Canvas, area: Rect, report: &Report) -> f64 {
     let several = !report.summands.is_empty();
     let rest =
         heading(canvas, area, if several { "The laws of the summands" } else { "The law of one summand" });
@@ -180,15 +197,26 @@ fn shape(law: &Summand, several: bool) -> String {
     format!("{whose}{atoms}{lattice}.")
 }
 
-/// Cautions and warnings, as many as there is room for.
-pub(super) fn cautions(canvas: &mut Canvas, area: Rect, report: &Report) {
-    let rest = heading(canvas, area, "Cautions");
-    let mut notes: Vec<&str> = report.cautions.iter().map(String::as_str).collect();
-    for warning in &report.summand.warnings {
-        if !notes.contains(&warning.as_str()) {
-            notes.push(warning);
+/// Cautions, then what the laws warn of, each once.
+fn notes(report: &Report) -> Vec<&str> {
+    let mut notes: Vec<&str> = Vec::new();
+    let warnings = report.summands.iter().chain([&report.summand]).flat_map(|law| &law.warnings);
+    for note in report.cautions.iter().chain(warnings) {
+        if !notes.contains(&note.as_str()) {
+            notes.push(note);
         }
     }
+    notes
+}
+
+fn cautions_height(notes: &[&str], wide: f64, font: Font) -> f64 {
+    let high = |note: &&str| wrapped(note, font, wide - 16.0, usize::MAX).len() as f64 * font.line_height() + 4.0;
+    notes.iter().map(high).sum()
+}
+
+/// Cautions and warnings, as many as there is room for.
+fn cautions(canvas: &mut Canvas, area: Rect, notes: &[&str]) {
+    let rest = heading(canvas, area, "Cautions");
     if notes.is_empty() {
         paragraph(canvas, rest, "None beyond the usual one: a model is not the world.");
         return;
@@ -198,13 +226,10 @@ pub(super) fn cautions(canvas: &mut Canvas, area: Rect, report: &Report) {
     let blocks = |font: Font| -> Vec<Vec<String>> {
         notes.iter().map(|note| wrapped(note, font, rest.width() - 16.0, usize::MAX)).collect()
     };
-    let needed = |font: Font| -> f64 {
-        blocks(font).iter().map(|lines| lines.len() as f64 * font.line_height() + 4.0).sum::<f64>()
-    };
     let font = [13.0, 12.5, 12.0, 11.5, 11.0, 10.5]
         .into_iter()
         .map(Font::regular)
-        .find(|&font| needed(font) <= rest.height())
+        .find(|&font| cautions_height(notes, rest.width(), font) <= rest.height())
         .unwrap_or(Font::regular(10.5));
     let all = blocks(font);
     let mut y = rest.top + font.size;
