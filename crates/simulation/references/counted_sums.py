@@ -4,7 +4,7 @@ Method (shares nothing with the crate's): masses by log-gamma at 60 digits and s
 laws; for tables the recursion for powers of a polynomial (Euler; De Pril 1985) at 150 (or 900) digits and again at twice as many,
 both agreeing to 30 digits or the script stops. Kolmogorov distances by looking at every lattice point.
 
-Run: python3 counted_sums.py > counted_sums.csv   (about a minute; mpmath 1.3.0, Python 3)
+Run: python3 counted_sums.py > counted_sums.csv   (about a minute of CPU; mpmath 1.3.0, Python 3)
 Columns: case, k, P(K <= k), P(K >= k); or case, kolmogorov, value, where; 20 digits.
 Probabilities such as 0.3 are the doubles nearest to them, weights of tables are integers.
 """

@@ -5,9 +5,11 @@
 
 pub mod closed_form;
 mod continuous;
+pub mod contour;
 #[cfg(test)]
 mod counted_checks;
 mod counting;
+pub mod inversion;
 pub mod lattice;
 mod route;
 mod steps;

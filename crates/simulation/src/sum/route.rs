@@ -1,8 +1,11 @@
 //! Which route a sum takes: the best exact one that certifies its error, simulation otherwise.
 
 use super::closed_form::ClosedFormSum;
+use super::contour::ContourSum;
+use super::inversion::InversionSum;
 use super::lattice::LatticeSum;
 use super::{Method, Route, RouteChoice, StandardizedSum, SumError, SumSpec, Term};
+use crate::monte_carlo::sums::SimulatedSum;
 use crate::work::Work;
 
 type Built = Result<Box<dyn StandardizedSum>, SumError>;
@@ -70,10 +73,30 @@ fn has_variance(spec: &SumSpec) -> Result<(), SumError> {
     }
 }
 
-fn invert(_: &SumSpec, _: &Method, _: &Work) -> Built {
-    Err(SumError::NotAvailable { route: Route::Inversion, reason: "not merged".to_owned() })
+/// Up to this many summands a deformed contour is tried before the transform, which then decays slowly.
+const FEW_SUMMANDS: u64 = 30;
+
+fn invert(spec: &SumSpec, method: &Method, work: &Work) -> Built {
+    let n: u64 = spec.terms.iter().map(|term| term.count).sum();
+    let contour = || boxed(ContourSum::build(spec, method, work));
+    if n <= FEW_SUMMANDS
+        && let decided @ (Ok(_) | Err(SumError::Cancelled(_) | SumError::NoVariance)) = contour()
+    {
+        return decided;
+    }
+    // The transform takes every law, so its reason is the one that tells something.
+    match boxed(InversionSum::build(spec, method, work)) {
+        Err(SumError::NotAvailable { route, reason }) if n > FEW_SUMMANDS => match contour() {
+            Err(SumError::NotAvailable { .. }) => Err(SumError::NotAvailable { route, reason }),
+            decided => decided,
+        },
+        decided => decided,
+    }
 }
 
-fn simulate(_: &SumSpec, _: &Method, reason: &str, _: &Work) -> Built {
-    Err(SumError::NotAvailable { route: Route::Simulation, reason: reason.to_owned() })
+fn simulate(spec: &SumSpec, method: &Method, reason: &str, work: &Work) -> Built {
+    boxed(SimulatedSum::build(spec, method, &PROBES, reason, work))
 }
+
+/// Where a simulation sharpens its tail probabilities.
+const PROBES: [f64; 9] = [-4.0, -3.0, -2.0, -1.0, 0.0, 1.0, 2.0, 3.0, 4.0];

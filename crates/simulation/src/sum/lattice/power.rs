@@ -41,19 +41,28 @@ pub(crate) fn transform_length(least: usize) -> usize {
     [two / 8 * 5, two / 4 * 3].into_iter().find(|&length| length >= least && length % 2 == 0).unwrap_or(two)
 }
 
-/// Relative to ln φ of one copy about its own mean, at the angle t: (ln|φ|, arg φ), with absolute error of a few
-/// units in the last place of |φ − 1|.
+/// ln|φ| and arg φ of one copy about its own mean at the angle t, and by how many units in the last place they may
+/// be wrong.
 ///
-/// φ − 1 = −2 Σ p sin²(ty/2) + i Σ p (sin ty − ty), because Σ p y = 0: no term is larger than what it adds.
-fn log_characteristic(part: &Part, t: f64) -> (f64, f64) {
-    let (mut re, mut im) = (0.0, 0.0);
+/// φ − 1 = −2 Σ p sin²(ty/2) + i Σ p (sin ty − ty), because Σ p y = 0: while ty is small no term is larger than
+/// what it adds, and the error is a few units of Σ p (ty)². Where ty is not small, the terms ty cancel and leave
+/// an error of a few units of Σ p |ty|, rounding of t itself included.
+fn log_characteristic(part: &Part, t: f64) -> (f64, f64, f64) {
+    let (mut re, mut im, mut units) = (0.0, 0.0, 0.0);
     for (y, mass) in part.deviations() {
         let u = t * y;
         let (sine, cosine) = (0.5 * u).sin_cos();
         re -= 2.0 * mass * sine * sine;
-        im += mass * if u.abs() < 0.5 { sine_minus_angle(u) } else { 2.0 * sine * cosine - u };
+        if u.abs() < 0.5 {
+            im += mass * sine_minus_angle(u);
+            units += 8.0 * mass * u * u;
+        } else {
+            im += mass * (2.0 * sine * cosine - u);
+            units += mass * (8.0 * u.abs() + 8.0);
+        }
     }
-    (0.5 * libm::log1p(2.0 * re + re * re + im * im), im.atan2(1.0 + re))
+    let square = (1.0 + re) * (1.0 + re) + im * im;
+    (0.5 * libm::log1p(2.0 * re + re * re + im * im), im.atan2(1.0 + re), units / square.sqrt().max(1e-300))
 }
 
 /// sin u − u for |u| ≤ ½, relative error a few units in the last place.
@@ -74,10 +83,9 @@ fn sine_minus_angle(u: f64) -> f64 {
 /// the window's start, is transformed back. Powers below 1e-20 are dropped without a logarithm.
 ///
 /// **Error.** (1) *Aliasing*: mass outside the window appears inside, at most `outside` in all. (2) *The powers*:
-/// power j has a relative error ε_j. Where φ came from the transform, ε_j = Σ_parts n·4u·log₂N/|φ| + u·|exponent|;
+/// power j has a relative error ε_j. Where φ came from the transform, ε_j = Σ_parts n·6u·log₂N/|φ| + u·|exponent|;
 /// where n is large the few frequencies that matter are evaluated anew about the exact mean
-/// ([`log_characteristic`]), and ε_j = Σ n·8u·(|φ−1| + t³·E|y|³-like remainders, bounded by |ln φ|) + 16u + the
-/// rounding of the phase. A run of masses sums e^(it_j k) over neighbouring k, at most 1/sin(πj/N) in modulus, so
+/// ([`log_characteristic`], which counts its own roundings), as long as that is the more accurate of the two. A run of masses sums e^(it_j k) over neighbouring k, at most 1/sin(πj/N) in modulus, so
 /// these errors add up to at most Σ_j 2|power_j|ε_j/(N sin(πj/N)); the error at j = 0 is 0 as the masses sum to 1.
 /// Damped sums have |1 − e^(−τ+it_j)| in place of 2 sin. (3) *The transform back*: its rounding error is at most
 /// 3u·log₂N of the masses in the Euclidean norm (three times the worst seen for this library, which is below the
@@ -126,7 +134,7 @@ pub(crate) fn masses(
             let argument = spectrum[j].im.atan2(spectrum[j].re);
             magnitude[j] += 0.5 * part.count * square.ln();
             phase[j] += reduced(part.count, argument);
-            relative[j] += part.count * U * (4.0 * log_length / square.sqrt() + 2.0 + argument.abs());
+            relative[j] += part.count * U * (6.0 * log_length / square.sqrt() + 2.0 + argument.abs());
         }
     }
     work.check()?;
@@ -139,6 +147,7 @@ pub(crate) fn masses(
     let mut refinements = if refine { REFINEMENTS / atoms.max(1) } else { 0 };
     let scale = 1.0 / length as f64;
     spectrum[0] = Complex64::new(scale, 0.0);
+    let mut overtaken = 0;
     let (mut run_error, mut damped_error) = (0.0, 0.0);
     for j in 1..=half {
         if magnitude[j] < NEGLIGIBLE {
@@ -146,26 +155,33 @@ pub(crate) fn masses(
             continue;
         }
         let t = TAU * j as f64 * scale;
-        let (logarithm, angle, error);
+        let turned = (j as u128 * u128::from(turn) % length as u128) as f64 * scale;
+        let mut logarithm = magnitude[j];
+        let mut angle = phase[j] - TAU * turned;
+        let mut error = relative[j] + U * (24.0 + 2.0 * logarithm.abs());
         if refinements > 0 {
             refinements -= 1;
-            let (mut log_sum, mut angle_sum, mut size) = (0.0, 0.0, 0.0);
+            let (mut log_sum, mut angle_sum, mut units) = (0.0, 0.0, 24.0);
             for part in parts {
-                let (log, argument) = log_characteristic(part, t);
+                let (log, argument, each) = log_characteristic(part, t);
                 log_sum += part.count * log;
                 angle_sum += reduced(part.count, argument);
-                size += part.count * (log.abs() + argument.abs());
+                units += part.count * (each + 4.0 * (log.abs() + argument.abs()));
             }
-            let turned = fraction(from_first.times(j as f64).times(scale));
-            logarithm = log_sum;
-            // The transform has e^(−itk): the conjugate.
-            angle = -angle_sum - TAU * turned;
-            error = U * (24.0 + 12.0 * size + 8.0 * j as f64);
-        } else {
-            let turned = (j as u128 * u128::from(turn) % length as u128) as f64 * scale;
-            logarithm = magnitude[j];
-            angle = phase[j] - TAU * turned;
-            error = relative[j] + U * (24.0 + 2.0 * logarithm.abs());
+            if U * units < error {
+                let turned = fraction(from_first.times(j as f64).times(scale));
+                logarithm = log_sum;
+                // The transform has e^(−itk): the conjugate.
+                angle = -angle_sum - TAU * turned;
+                error = U * units;
+                overtaken = 0;
+            } else {
+                // From some frequency on the transform is the better of the two.
+                overtaken += 1;
+                if overtaken == 16 {
+                    refinements = 0;
+                }
+            }
         }
         let size = logarithm.exp();
         let (sine, cosine) = angle.sin_cos();

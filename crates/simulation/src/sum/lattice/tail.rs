@@ -40,8 +40,16 @@ pub(crate) struct Tail {
 /// Mass left outside the window of a tilted sum on each side: e^−46 ≈ 1e-20.
 const OUTSIDE: f64 = 46.0;
 
+/// Relative accuracy of the tails of a region.
+const SHARP: f64 = 1e-9;
+
 /// Tilted standard deviations from the centre of a region to its ends.
 const HALF_WIDTH: f64 = 2.0;
+
+/// Whether a tail probability is known to the relative accuracy a region must have.
+fn is_sharp(tail: &Figure) -> bool {
+    tail.error <= SHARP * tail.value || tail.value < 1e-300
+}
 
 impl Tail {
     /// The tail beyond `begin`; `upper` says which.
@@ -70,14 +78,26 @@ impl Tail {
                 if !beyond(k, region.far) {
                     break;
                 }
-                if let Some(last) = region.tails.last() {
-                    if last.value < 1e-300 {
-                        return Figure::bound(0.0, last.value + last.error);
-                    }
+                if let Some(last) = region.tails.last()
+                    && last.value < 1e-300
+                {
+                    return Figure::bound(0.0, last.value + last.error);
                 }
             }
             let start = regions.last().map_or(self.sign * 4.0 / self.sd, |region| region.theta);
-            regions.push(Arc::new(self.region(parts, near, start)));
+            let mut region = self.region(parts, near, start, HALF_WIDTH);
+            // A lumpy law may have little mass where the tilt for further out puts it: tilt for here instead.
+            if region.tails.first().is_some_and(|first| !is_sharp(first)) {
+                let closer = self.region(parts, near, start, 0.0);
+                if closer.tails[0].error < region.tails[0].error {
+                    region = closer;
+                }
+            }
+            // The region ends where its relative accuracy does; the next one begins there.
+            let sharp = region.tails.iter().skip(1).take_while(|tail| is_sharp(tail)).count() + 1;
+            region.tails.truncate(sharp);
+            region.far = near + self.sign as i64 * (sharp as i64 - 1);
+            regions.push(Arc::new(region));
         }
         let found = regions.iter().rev().find(|region| !beyond(region.near, k));
         found
@@ -86,7 +106,7 @@ impl Tail {
     }
 
     /// Computes the region beginning at `near`.
-    fn region(&self, parts: &[Part], near: i64, start: f64) -> Region {
+    fn region(&self, parts: &[Part], near: i64, start: f64, half_width: f64) -> Region {
         let mean = center(parts);
         // All distances from the mean are counted outwards, so that both tails read alike.
         let near_distance = self.sign * mean.distance_to(near as f64);
@@ -98,7 +118,7 @@ impl Tail {
         let mut tries = 0;
         loop {
             target =
-                (near_distance + HALF_WIDTH * sd).min(0.5 * (near_distance + furthest)).min(furthest - 0.4);
+                (near_distance + half_width * sd).min(0.5 * (near_distance + furthest)).min(furthest - 0.4);
             (theta, cumulants) = tilt_for(parts, self.sign * target, theta);
             let tilted_sd = cumulants.curvature.sqrt();
             tries += 1;
