@@ -4,8 +4,8 @@ use super::canvas::{Anchor, Canvas, Rect};
 use super::law_picture;
 use super::table::{Column, HEADING_ROOM, Table, heading};
 use super::text::{Font, wrapped};
-use crate::numbers::{error_only, figure_in, number, optional};
-use gaussgap_conclusions::report::{Report, Summand, TailRow};
+use crate::numbers::{error_only, figure_in, number, optional, whole};
+use gaussgap_conclusions::report::{Guarantee, Remedy, Report, RuleOfThumb, Summand, TailRow};
 
 const BODY: Font = Font::regular(13.0);
 
@@ -32,7 +32,6 @@ pub(super) fn tails(canvas: &mut Canvas, area: Rect, report: &Report) {
         rows: chosen(&report.tails, 15).into_iter().map(tail_row).collect(),
         lines: 1,
     };
-    let table = Table { rows: table.rows, ..table };
     table.draw(canvas, rest);
 }
 
@@ -59,57 +58,72 @@ fn tail_row(row: &TailRow) -> Vec<String> {
     ]
 }
 
-/// Remedies, then the rules of thumb.
+/// Remedies, then what is guaranteed (deviation claims), then the rules of thumb.
 pub(super) fn remedies(canvas: &mut Canvas, area: Rect, report: &Report) {
     let rest = heading(canvas, area, "Remedies at the planned n");
-    let mut bottom = rest.top;
-    if report.remedies.is_empty() {
-        bottom = paragraph(canvas, rest, "None was computed.") + 6.0;
+    let below: Vec<Table> = [guarantees(report), rules(report)].into_iter().flatten().collect();
+    let mut top = if report.remedies.is_empty() {
+        paragraph(canvas, rest, "None was computed.") + 6.0
     } else {
-        let table = Table {
-            columns: vec![text("remedy"), numeric("actual"), numeric("holds")],
-            rows: report
-                .remedies
-                .iter()
-                .map(|remedy| {
-                    let note = remedy.note.trim();
-                    vec![
-                        if note.is_empty() {
-                            remedy.name.clone()
-                        } else {
-                            format!("{}: {note}", remedy.name)
-                        },
-                        remedy.actual.map_or_else(|| "–".to_owned(), |actual| figure_in(&actual, 5)),
-                        if remedy.holds { "✓ yes" } else { "✗ no" }.to_owned(),
-                    ]
-                })
-                .collect(),
-            lines: 2,
-        };
-        let share = if report.rules_of_thumb.is_empty() { 1.0 } else { 0.66 };
-        let room = Rect { bottom: rest.top + share * rest.height(), ..rest };
-        bottom = table.draw(canvas, room).max(bottom) + 12.0;
-    }
-    if report.rules_of_thumb.is_empty() || area.bottom - bottom < 44.0 {
-        return;
-    }
-    let table = Table {
-        columns: vec![text("rule of thumb"), numeric("says"), numeric("right here")],
-        rows: report
-            .rules_of_thumb
-            .iter()
-            .map(|rule| {
-                let agrees = match rule.agrees {
-                    Some(true) => "✓ yes",
-                    Some(false) => "✗ no",
-                    None => "–",
-                };
-                vec![rule.rule.clone(), rule.says.clone(), agrees.to_owned()]
-            })
-            .collect(),
-        lines: 1,
+        let share = [1.0, 0.62, 0.45][below.len().min(2)];
+        remedy_table(report).draw(canvas, Rect { bottom: rest.top + share * rest.height(), ..rest }) + 12.0
     };
-    table.draw(canvas, Rect { top: bottom, ..area });
+    let count = below.len();
+    for (index, table) in below.into_iter().enumerate() {
+        let bottom = top + (area.bottom - top) / (count - index) as f64;
+        if bottom - top >= 44.0 {
+            top = table.draw(canvas, Rect { top, bottom, ..area }) + 12.0;
+        }
+    }
+}
+
+fn remedy_table(report: &Report) -> Table {
+    let row = |remedy: &Remedy| {
+        let note = remedy.note.trim();
+        vec![
+            if note.is_empty() { remedy.name.clone() } else { format!("{}: {note}", remedy.name) },
+            remedy.actual.map_or_else(|| "–".to_owned(), |actual| figure_in(&actual, 5)),
+            if remedy.holds { "✓ yes" } else { "✗ no" }.to_owned(),
+        ]
+    };
+    Table {
+        columns: vec![text("remedy"), numeric("actual"), numeric("holds")],
+        rows: report.remedies.iter().map(row).collect(),
+        lines: 2,
+    }
+}
+
+fn guarantees(report: &Report) -> Option<Table> {
+    let guarantees = report.claim.guarantees.as_ref().filter(|list| !list.is_empty())?;
+    let needed = |name: &str| match report.claim.needed_n.as_ref().and_then(|needed| needed.get(name)) {
+        Some(Some(n)) => whole(*n),
+        Some(None) => "none".to_owned(),
+        None => "–".to_owned(),
+    };
+    let row = |guarantee: &Guarantee| {
+        vec![guarantee.name.clone(), optional(guarantee.value, 4), needed(&guarantee.name)]
+    };
+    Some(Table {
+        columns: vec![text("guarantee"), numeric("at most"), numeric("needed n")],
+        rows: guarantees.iter().map(row).collect(),
+        lines: 1,
+    })
+}
+
+fn rules(report: &Report) -> Option<Table> {
+    let row = |rule: &RuleOfThumb| {
+        let agrees = match rule.agrees {
+            Some(true) => "✓ yes",
+            Some(false) => "✗ no",
+            None => "–",
+        };
+        vec![rule.rule.clone(), rule.says.clone(), agrees.to_owned()]
+    };
+    (!report.rules_of_thumb.is_empty()).then(|| Table {
+        columns: vec![text("rule of thumb"), numeric("says"), numeric("agrees")],
+        rows: report.rules_of_thumb.iter().map(row).collect(),
+        lines: 1,
+    })
 }
 
 /// The law's facts, its picture where there is room, and the cautions.
@@ -210,7 +224,8 @@ fn notes(report: &Report) -> Vec<&str> {
 }
 
 fn cautions_height(notes: &[&str], wide: f64, font: Font) -> f64 {
-    let high = |note: &&str| wrapped(note, font, wide - 16.0, usize::MAX).len() as f64 * font.line_height() + 4.0;
+    let high =
+        |note: &&str| wrapped(note, font, wide - 16.0, usize::MAX).len() as f64 * font.line_height() + 4.0;
     notes.iter().map(high).sum()
 }
 

@@ -89,7 +89,11 @@ pub(super) fn draw(canvas: &mut Canvas, area: Rect, bars: &[Bar], unit: Option<&
         let inset = ((right - left) * 0.12).min(1.5);
         canvas.rect(Rect::new(left + inset, top, right - inset, plot.bottom), palette.actual);
     }
-    canvas.line((plot.left, plot.bottom), (plot.right, plot.bottom), Stroke { width: 1.2, ..palette.axis_line() });
+    canvas.line(
+        (plot.left, plot.bottom),
+        (plot.right, plot.bottom),
+        Stroke { width: 1.2, ..palette.axis_line() },
+    );
     let (ticks, factor) = axis.ticks(6);
     let unit = [factor.as_deref(), unit].into_iter().flatten().collect::<Vec<_>>().join(" ");
     let unit_room = if unit.is_empty() { 0.0 } else { width(&unit, SMALL) + 10.0 };
