@@ -121,6 +121,11 @@ fn of_piece(piece: &Piece) -> StandardMoments {
     {
         return moments.image(piece.add, piece.multiply);
     }
+    by_quadrature(piece)
+}
+
+/// The same by quadrature, whether or not the density has closed moments.
+pub(crate) fn by_quadrature(piece: &Piece) -> StandardMoments {
     let (upper, lower) = piece.tail_indices();
     let index = upper.min(lower);
     let mut nodes = Nodes::of(piece);

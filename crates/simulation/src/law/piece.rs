@@ -160,7 +160,7 @@ impl Piece {
     /// quantiles where the piece is a far-off part of the density, and its ends where they are finite.
     pub fn panel_points(&self) -> Vec<f64> {
         let mut points: Vec<f64> =
-            self.density.skeleton().into_iter().filter(|&y| y > self.low && y < self.high).collect();
+            self.density.skeleton().into_iter().filter(|&y| y >= self.low && y <= self.high).collect();
         points.extend(self.density.breakpoints().into_iter().filter(|&y| y > self.low && y < self.high));
         if !self.is_whole() {
             for level in LEVELS {
@@ -179,8 +179,6 @@ impl Piece {
         }
         let mut points = tidy(points);
         if support_low.is_finite() {
-            let smallest = support_low + f64::MIN_POSITIVE;
-            points.retain(|&y| y >= support_low && (y >= smallest || !singular_low));
             points = grade_from(&points, support_low, 4.0);
         }
         points

@@ -1,7 +1,7 @@
 //! A density typed as text in `x` on [low, high], normalised here. The grammar is in [`crate::law::expression`].
 //!
 //! The interval is bisected until a 20-node rule and its two halves agree on every stretch to 1e-15 of the
-//! whole; kinks end up between stretches. Refused are negative or undefined values at any node, a total that
+//! whole (probabilities are right to that absolute error, not relatively in the tails); kinks end up between stretches. Refused are negative or undefined values at any node, a total that
 //! does not converge (infinite mass) or vanishes, and singular ends away from 0 that doubles cannot resolve.
 
 use crate::law::Piece;
