@@ -1,1 +1,5 @@
 //! The program: window and command.
+
+pub mod command;
+pub mod files;
+pub mod shell;
