@@ -1,1 +1,3 @@
 //! The program: window and command.
+
+pub mod window;
