@@ -7,4 +7,5 @@ pub mod law_kinds;
 pub mod law_parameters;
 pub mod law_tree;
 pub mod pins;
+pub mod prepared;
 pub mod settings;
