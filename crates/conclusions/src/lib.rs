@@ -2,6 +2,7 @@
 
 pub mod report;
 pub mod scenario;
+pub mod words;
 
 use gaussgap_simulation::work::{Cancelled, Work};
 use report::Report;

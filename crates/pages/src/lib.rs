@@ -2,6 +2,8 @@
 //! [`gaussgap_conclusions::report::Report`] into bytes or text; nothing here reads or writes a file.
 
 pub mod curves;
+pub mod numbers;
+pub mod page;
 pub mod report;
 pub mod schema;
 

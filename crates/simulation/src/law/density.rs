@@ -5,6 +5,42 @@
 use num_complex::Complex64;
 use std::fmt::Debug;
 
+/// Mean, sd, skewness and excess kurtosis of a density; `None` where the moment does not exist.
+#[derive(Debug, Clone, Copy, PartialEq)]
+pub struct StandardMoments {
+    /// E X.
+    pub mean: Option<f64>,
+    /// Standard deviation.
+    pub sd: Option<f64>,
+    /// E (X − mean)³ / sd³.
+    pub skewness: Option<f64>,
+    /// E (X − mean)⁴ / sd⁴ − 3.
+    pub excess_kurtosis: Option<f64>,
+}
+
+impl StandardMoments {
+    /// Moments that all exist.
+    pub const fn finite(mean: f64, sd: f64, skewness: f64, excess_kurtosis: f64) -> Self {
+        Self {
+            mean: Some(mean),
+            sd: Some(sd),
+            skewness: Some(skewness),
+            excess_kurtosis: Some(excess_kurtosis),
+        }
+    }
+
+    /// The moments of add + multiply·X.
+    pub fn image(self, add: f64, multiply: f64) -> Self {
+        Self {
+            mean: self.mean.map(|mean| add + multiply * mean),
+            sd: self.sd.map(|sd| multiply.abs() * sd),
+            // + 0.0 keeps a skewness of −0 out.
+            skewness: self.skewness.map(|skewness| multiply.signum() * skewness + 0.0),
+            excess_kurtosis: self.excess_kurtosis,
+        }
+    }
+}
+
 /// One absolutely continuous law whose density is analytic between its breakpoints.
 ///
 /// All methods accept any finite argument, never panic and never return `NaN`.
@@ -80,6 +116,17 @@ pub trait Density: Debug + Send + Sync {
     /// ∫_a^b (x − c)^k f(x) dx for k = 0..=4 in closed form, relative error ≤ 1e-13 of ∫|x − c|^k f; `None`
     /// hands over to quadrature. Ends may be infinite; the caller checks that the moment exists.
     fn partial_moment(&self, _k: u32, _center: f64, _a: f64, _b: f64) -> Option<f64> {
+        None
+    }
+
+    /// Moments of the whole density in closed form (relative error ~1e-14); `None` hands over to quadrature.
+    fn standard_moments(&self) -> Option<StandardMoments> {
+        None
+    }
+
+    /// For a density symmetric about 0 whose halves allow rotation where the whole does not: the density of
+    /// |X|, of which the law is an even mixture with its mirror image. Used before truncating.
+    fn folded(&self) -> Option<std::sync::Arc<dyn Density>> {
         None
     }
 

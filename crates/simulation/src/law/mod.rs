@@ -5,10 +5,25 @@
 //! images, caps and restrictions stay inside this form, so the routes in [`crate::sum`] need to know nothing
 //! about how a law was built.
 
+mod checks;
+mod compile;
 pub mod density;
+mod families;
+mod form;
+mod lattice;
+mod moments;
+mod opaque;
+mod piece;
+mod probabilities;
+mod quadrature;
+mod sampler;
 pub mod spec;
+#[cfg(test)]
+mod tests;
 
 pub use density::Density;
+pub use quadrature::gauss_legendre;
+pub use sampler::Sampler;
 pub use spec::{DataTail, LawSpec, MixturePart};
 
 use std::sync::Arc;
@@ -100,7 +115,7 @@ pub struct LawProblem {
 /// A law made ready for computing. Cheap to clone.
 #[derive(Debug, Clone)]
 pub struct Law {
-    inner: Arc<LawParts>,
+    inner: Arc<probabilities::Prepared>,
 }
 
 /// The normal form of a law.
@@ -130,6 +145,6 @@ pub struct LawParts {
 impl std::ops::Deref for Law {
     type Target = LawParts;
     fn deref(&self) -> &LawParts {
-        &self.inner
+        &self.inner.parts
     }
 }

@@ -28,16 +28,36 @@ pub enum DataTail {
 #[serde(tag = "kind", rename_all = "kebab-case", deny_unknown_fields)]
 #[allow(missing_docs, reason = "the parameters carry their field's usual names, documented per law")]
 pub enum LawSpec {
-    Constant { value: f64 },
-    Bernoulli { p: f64 },
-    Binomial { trials: u64, p: f64 },
-    Poisson { rate: f64 },
+    Constant {
+        value: f64,
+    },
+    Bernoulli {
+        p: f64,
+    },
+    Binomial {
+        trials: u64,
+        p: f64,
+    },
+    Poisson {
+        rate: f64,
+    },
     /// Failures before the first success.
-    Geometric { p: f64 },
+    Geometric {
+        p: f64,
+    },
     /// Failures before the `size`-th success.
-    NegativeBinomial { size: f64, p: f64 },
-    DiscreteUniform { low: i64, high: i64 },
-    Table { values: Vec<f64>, weights: Vec<f64> },
+    NegativeBinomial {
+        size: f64,
+        p: f64,
+    },
+    DiscreteUniform {
+        low: i64,
+        high: i64,
+    },
+    Table {
+        values: Vec<f64>,
+        weights: Vec<f64>,
+    },
     /// Pilot data. Before compiling, whoever reads files fills `values` from `path` and `column`.
     Data {
         #[serde(skip_serializing_if = "Option::is_none")]
@@ -49,12 +69,29 @@ pub enum LawSpec {
         #[serde(skip_serializing_if = "Option::is_none")]
         tail: Option<DataTail>,
     },
-    Histogram { edges: Vec<f64>, weights: Vec<f64> },
-    Normal { mean: f64, sd: f64 },
-    Uniform { low: f64, high: f64 },
-    Exponential { mean: f64 },
-    Gamma { shape: f64, scale: f64 },
-    Weibull { shape: f64, scale: f64 },
+    Histogram {
+        edges: Vec<f64>,
+        weights: Vec<f64>,
+    },
+    Normal {
+        mean: f64,
+        sd: f64,
+    },
+    Uniform {
+        low: f64,
+        high: f64,
+    },
+    Exponential {
+        mean: f64,
+    },
+    Gamma {
+        shape: f64,
+        scale: f64,
+    },
+    Weibull {
+        shape: f64,
+        scale: f64,
+    },
     /// Either `log_mean` and `log_sd`, or `mean` and `sd`.
     Lognormal {
         #[serde(skip_serializing_if = "Option::is_none")]
@@ -67,10 +104,20 @@ pub enum LawSpec {
         sd: Option<f64>,
     },
     /// Survival (1 + x/scale)^(−shape), x ≥ 0.
-    Lomax { shape: f64, scale: f64 },
+    Lomax {
+        shape: f64,
+        scale: f64,
+    },
     /// Survival (x/minimum)^(−shape), x ≥ minimum.
-    Pareto { shape: f64, minimum: f64 },
-    GeneralizedPareto { threshold: f64, scale: f64, shape: f64 },
+    Pareto {
+        shape: f64,
+        minimum: f64,
+    },
+    GeneralizedPareto {
+        threshold: f64,
+        scale: f64,
+        shape: f64,
+    },
     Beta {
         a: f64,
         b: f64,
@@ -79,9 +126,19 @@ pub enum LawSpec {
         #[serde(skip_serializing_if = "Option::is_none")]
         high: Option<f64>,
     },
-    Triangular { low: f64, mode: f64, high: f64 },
-    Laplace { mean: f64, scale: f64 },
-    Logistic { mean: f64, scale: f64 },
+    Triangular {
+        low: f64,
+        mode: f64,
+        high: f64,
+    },
+    Laplace {
+        mean: f64,
+        scale: f64,
+    },
+    Logistic {
+        mean: f64,
+        scale: f64,
+    },
     StudentT {
         df: f64,
         #[serde(skip_serializing_if = "Option::is_none")]
@@ -89,12 +146,25 @@ pub enum LawSpec {
         #[serde(skip_serializing_if = "Option::is_none")]
         scale: Option<f64>,
     },
-    InverseGaussian { mean: f64, shape: f64 },
+    InverseGaussian {
+        mean: f64,
+        shape: f64,
+    },
     /// A density typed as text in `x` on [low, high], normalised by the program.
-    Formula { density: String, low: f64, high: f64 },
-    Mixture { parts: Vec<MixturePart> },
+    Formula {
+        density: String,
+        low: f64,
+        high: f64,
+    },
+    Mixture {
+        parts: Vec<MixturePart>,
+    },
     /// add + multiply·X.
-    Affine { law: Box<LawSpec>, add: f64, multiply: f64 },
+    Affine {
+        law: Box<LawSpec>,
+        add: f64,
+        multiply: f64,
+    },
     /// Values beyond a limit are moved to the limit.
     Cap {
         law: Box<LawSpec>,
@@ -112,7 +182,13 @@ pub enum LawSpec {
         high: Option<f64>,
     },
     /// To the nearest multiple of `step`, ties to even.
-    Round { law: Box<LawSpec>, step: f64 },
+    Round {
+        law: Box<LawSpec>,
+        step: f64,
+    },
     /// The sum of a random number (`count`, a law on 0, 1, 2, …) of independent copies of `each`.
-    Compound { count: Box<LawSpec>, each: Box<LawSpec> },
+    Compound {
+        count: Box<LawSpec>,
+        each: Box<LawSpec>,
+    },
 }

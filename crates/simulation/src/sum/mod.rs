@@ -117,7 +117,9 @@ pub trait StandardizedSum: Send + Sync + std::fmt::Debug {
 }
 
 /// Which route to take.
-#[derive(Debug, Clone, Copy, PartialEq, Eq, Default, serde::Serialize, serde::Deserialize, schemars::JsonSchema)]
+#[derive(
+    Debug, Clone, Copy, PartialEq, Eq, Default, serde::Serialize, serde::Deserialize, schemars::JsonSchema,
+)]
 #[serde(rename_all = "kebab-case")]
 pub enum RouteChoice {
     /// The best exact route, else simulation.

@@ -1,0 +1,1 @@
+//! Laws are tested as laws: one harness over a list of cases.
