@@ -52,9 +52,24 @@ impl Document {
         self.revision
     }
 
+    /// The scenario as it was last opened or saved.
+    pub fn saved(&self) -> &Arc<Scenario> {
+        &self.saved
+    }
+
     /// Whether there are changes that are in no file.
     pub fn is_changed(&self) -> bool {
-        self.scenario != self.saved
+        !Arc::ptr_eq(&self.scenario, &self.saved) && self.scenario != self.saved
+    }
+
+    /// Counts revisions on from those of the document before, so that no answer is mistaken.
+    pub fn start_after(&mut self, revision: u64) {
+        self.revision = revision + 1;
+    }
+
+    /// Gives the changes up: they no longer stand in the way of anything.
+    pub fn discard_changes(&mut self) {
+        self.saved = Arc::clone(&self.scenario);
     }
 
     /// Marks the scenario as saved in a file.

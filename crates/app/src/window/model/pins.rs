@@ -1,6 +1,7 @@
 //! Pins: finished assessments kept for comparison.
 
 use super::prepared::Prepared;
+use gaussgap_conclusions::scenario::Scenario;
 use std::sync::Arc;
 
 /// How many pins there can be.
@@ -13,6 +14,8 @@ pub struct Pin {
     pub name: String,
     /// What was found, ready for drawing.
     pub found: Arc<Prepared>,
+    /// The scenario as it was being edited.
+    pub asked: Arc<Scenario>,
 }
 
 /// The pins in their order.
@@ -28,11 +31,11 @@ impl Pins {
     }
 
     /// Keeps a report; refused when four are kept already.
-    pub fn keep(&mut self, name: String, found: Arc<Prepared>) -> bool {
+    pub fn keep(&mut self, name: String, found: Arc<Prepared>, asked: Arc<Scenario>) -> bool {
         if self.pins.len() >= MOST {
             return false;
         }
-        self.pins.push(Pin { name, found });
+        self.pins.push(Pin { name, found, asked });
         true
     }
 

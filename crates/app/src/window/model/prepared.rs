@@ -151,6 +151,33 @@ fn pictures(scenario: &Scenario) -> Vec<Picture> {
     laws.into_iter().map(picture).collect()
 }
 
-fn picture(_spec: &LawSpec) -> Picture {
-    Picture::default()
+/// Points of the density in a picture.
+const PICTURE_POINTS: usize = 160;
+/// Atoms in a picture.
+const PICTURE_ATOMS: usize = 400;
+
+fn picture(spec: &LawSpec) -> Picture {
+    let Ok(law) = spec.compile() else { return Picture::default() };
+    let ends = [law.quantile(0.002), law.quantile(0.995)];
+    if !ends.iter().all(|end| end.is_finite()) || ends[1] < ends[0] {
+        return Picture::default();
+    }
+    let width = ends[1] - ends[0];
+    let margin = if width > 0.0 { width * 0.04 } else { ends[0].abs().max(1.0) * 0.5 };
+    let range = [ends[0] - margin, ends[1] + margin];
+    let step = (range[1] - range[0]) / (PICTURE_POINTS - 1) as f64;
+    let density = if law.pieces.is_empty() {
+        Line::new()
+    } else {
+        let points = (0..PICTURE_POINTS).map(|i| range[0] + i as f64 * step);
+        points.map(|x| [x, law.density(x)]).filter(|p| p[1].is_finite()).collect()
+    };
+    let inside = law.atoms.iter().filter(|atom| atom.value >= range[0] && atom.value <= range[1]);
+    let mut atoms: Vec<Atom> = inside.copied().collect();
+    if atoms.len() > PICTURE_ATOMS {
+        atoms.sort_by(|a, b| b.mass.total_cmp(&a.mass));
+        atoms.truncate(PICTURE_ATOMS);
+        atoms.sort_by(|a, b| a.value.total_cmp(&b.value));
+    }
+    Picture { density, atoms, range }
 }

@@ -1,7 +1,7 @@
 //! Pilot data of a scenario: read beside the window, kept as long as the file does not change.
 
 use super::super::model::examples;
-use crate::files;
+use crate::files::column;
 use gaussgap_conclusions::Problem;
 use gaussgap_conclusions::scenario::Scenario;
 use std::collections::HashMap;
@@ -45,8 +45,8 @@ impl Cache {
         }
         let bundled = examples::DATA.iter().find(|(name, _)| folder.is_none() && *name == path);
         let read = match bundled {
-            Some((name, text)) => files::read_column_from(text.as_bytes(), Path::new(name), Some(column)),
-            None => files::read_column(&full, Some(column)),
+            Some((name, text)) => column::read_column_from(text.as_bytes(), Path::new(name), Some(column)),
+            None => column::read_column(&full, Some(column)),
         };
         let read = read.map(Arc::new).map_err(|error| error.lines().join("\n"));
         self.columns.retain(|(known, _, _), _| known != &full);
