@@ -48,15 +48,20 @@ pub fn whole(value: u64) -> String {
 }
 
 /// A value with its error, rounded so that the interval shown contains the interval meant: `0.9213 ± 0.0003`,
-/// `(1.20 ± 0.02)×10⁻¹⁰`. An error below a ten-millionth of the value is not shown: it is smaller than a
-/// unit in the last of the six digits shown.
+/// `(1.20 ± 0.02)×10⁻¹⁰`. An error too small to show in six digits is left out.
 pub fn figure(figure: &Figure) -> String {
+    figure_in(figure, 6)
+}
+
+/// [`figure`] for tight places: the error is left out where it is below a tenth of a unit in the last of `digits`
+/// digits.
+pub fn figure_in(figure: &Figure, digits: usize) -> String {
     let Figure { value, error, .. } = *figure;
     if !value.is_finite() || !error.is_finite() {
         return "–".to_owned();
     }
-    if error <= 1e-7 * value.abs() || error == 0.0 {
-        return number(value, 6);
+    if error <= 10_f64.powi(-(digits as i32) - 1) * value.abs() || error == 0.0 {
+        return number(value, digits);
     }
     let largest = value.abs().max(error);
     let exponent = largest.log10().floor() as i32;
@@ -97,17 +102,17 @@ fn rounded(value: f64, error: f64) -> (String, String) {
 }
 
 fn without_trailing_zeros(text: &str) -> String {
-    if text.contains('.') { text.trim_end_matches('0').trim_end_matches('.').to_owned() } else { text.to_owned() }
+    if text.contains('.') {
+        text.trim_end_matches('0').trim_end_matches('.').to_owned()
+    } else {
+        text.to_owned()
+    }
 }
 
 /// A whole exponent in superscript digits.
 pub fn superscript(exponent: i32) -> String {
     const DIGITS: [char; 10] = ['⁰', '¹', '²', '³', '⁴', '⁵', '⁶', '⁷', '⁸', '⁹'];
-    exponent
-        .to_string()
-        .chars()
-        .map(|c| c.to_digit(10).map_or('⁻', |digit| DIGITS[digit as usize]))
-        .collect()
+    exponent.to_string().chars().map(|c| c.to_digit(10).map_or('⁻', |digit| DIGITS[digit as usize])).collect()
 }
 
 #[cfg(test)]
@@ -152,7 +157,10 @@ mod tests {
             let text = figure(&Figure::bound(value, error));
             let Some((shown, half)) = text.split_once(" ± ") else { continue };
             let (Ok(shown), Ok(half)) = (shown.parse::<f64>(), half.parse::<f64>()) else { continue };
-            assert!(shown - half <= value - error + 1e-13 && shown + half >= value + error - 1e-13, "{text}: {value} {error}");
+            assert!(
+                shown - half <= value - error + 1e-13 && shown + half >= value + error - 1e-13,
+                "{text}: {value} {error}"
+            );
         }
     }
 

@@ -131,7 +131,11 @@ impl Job {
                 .map(String::as_str)
                 .or_else(|| payload.downcast_ref::<&str>().copied())
                 .unwrap_or("no message");
-            let line = format!("{}: internal error, please report it: {}", path.display(), message.replace('\n', " "));
+            let line = format!(
+                "{}: internal error, please report it: {}",
+                path.display(),
+                message.replace('\n', " ")
+            );
             Outcome::failed(Status::Failure, vec![line])
         })
     }
@@ -148,7 +152,9 @@ impl Job {
                 let error = ScenarioFileError::in_document(path, &problems);
                 return Outcome::failed(Status::BadInput, error.lines);
             }
-            Err(error) => return Outcome::failed(Status::Failure, vec![format!("{}: {error}", path.display())]),
+            Err(error) => {
+                return Outcome::failed(Status::Failure, vec![format!("{}: {error}", path.display())]);
+            }
         };
         match self.rendered(index, &found) {
             Ok((line, artifacts)) => Outcome {
@@ -231,7 +237,9 @@ impl Delivery {
         let lines: Option<Box<dyn LineSink>> = match &outputs.lines {
             None => None,
             Some(Place::StandardOutput) => Some(Box::new(StandardOutput)),
-            Some(Place::File(path)) => Some(Box::new(WholeFile::create(path).map_err(|error| error.to_string())?)),
+            Some(Place::File(path)) => {
+                Some(Box::new(WholeFile::create(path).map_err(|error| error.to_string())?))
+            }
         };
         Ok(Self { lines, any_line: false, worst: Status::Holds, first: true })
     }

@@ -94,7 +94,8 @@ pub fn plan(arguments: &AssessArguments, scenarios: &[PathBuf]) -> Result<Output
         let Some(path) = path else { continue };
         if path.as_os_str() == "-" {
             if let Some(other) = on_standard_output.replace(format.option()) {
-                let line = format!("gaussgap: {other} and {} cannot both go to standard output", format.option());
+                let line =
+                    format!("gaussgap: {other} and {} cannot both go to standard output", format.option());
                 return Err(Refusal::bad_input(line));
             }
         }
@@ -171,7 +172,9 @@ fn check(outputs: &Outputs, scenarios: &[PathBuf]) -> Result<(), Refusal> {
         let in_folder = path.file_name().map_or_else(|| real_folder.clone(), |name| real_folder.join(name));
         let real = path.canonicalize().unwrap_or(in_folder);
         if inputs.contains(&real) {
-            return Err(Refusal::bad_input(format!("{shown}: would overwrite a scenario that is to be assessed")));
+            return Err(Refusal::bad_input(format!(
+                "{shown}: would overwrite a scenario that is to be assessed"
+            )));
         }
         if seen.insert(real, ()).is_some() {
             return Err(Refusal::bad_input(format!("{shown}: two outputs would be written to this file")));
@@ -189,7 +192,9 @@ mod tests {
     fn planned(folder: &Path, line: &str, scenarios: &[&str]) -> Result<Outputs, Refusal> {
         let line = line.replace("DIR", folder.to_str().unwrap());
         let words = ["gaussgap", "assess", "x.json"].into_iter().chain(line.split_whitespace());
-        let Some(Command::Assess(arguments)) = Arguments::try_parse_from(words).unwrap().command else { panic!() };
+        let Some(Command::Assess(arguments)) = Arguments::try_parse_from(words).unwrap().command else {
+            panic!()
+        };
         let scenarios: Vec<PathBuf> = scenarios.iter().map(|name| folder.join(name)).collect();
         plan(&arguments, &scenarios)
     }
@@ -205,7 +210,11 @@ mod tests {
     #[test]
     fn several_need_a_folder_or_braces_for_pages_but_share_a_json_file() {
         let folder = tempfile::tempdir().unwrap();
-        let outputs = planned(folder.path(), "--json DIR/all.jsonl --png DIR --svg DIR/p-{}.svg", &["a.json", "b.json"]);
+        let outputs = planned(
+            folder.path(),
+            "--json DIR/all.jsonl --png DIR --svg DIR/p-{}.svg",
+            &["a.json", "b.json"],
+        );
         let outputs = outputs.unwrap();
         assert_eq!(outputs.lines, Some(Place::File(folder.path().join("all.jsonl"))));
         assert_eq!(outputs.each[1][0], (Format::Png, Place::File(folder.path().join("b.png"))));

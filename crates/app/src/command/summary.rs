@@ -36,7 +36,8 @@ pub fn summary(path: &Path, report: &Report) -> String {
     if report.verdict.state != State::Holds
         && let Some(remedy) = report.remedies.iter().find(|remedy| remedy.holds)
     {
-        let actual = remedy.actual.map_or_else(String::new, |actual| format!(" ({})", numbers::figure(&actual)));
+        let actual =
+            remedy.actual.map_or_else(String::new, |actual| format!(" ({})", numbers::figure(&actual)));
         lines.push(format!("  What would hold: {}{actual}.", one_line(&remedy.name)));
     }
     lines.extend(report.cautions.iter().map(|caution| format!("  Caution: {}", one_line(caution))));
@@ -55,5 +56,8 @@ fn word(state: State) -> &'static str {
 
 /// Text of a scenario on one line, without control characters.
 fn one_line(text: &str) -> String {
-    text.split(|c: char| c.is_whitespace() || c.is_control()).filter(|word| !word.is_empty()).collect::<Vec<_>>().join(" ")
+    text.split(|c: char| c.is_whitespace() || c.is_control())
+        .filter(|word| !word.is_empty())
+        .collect::<Vec<_>>()
+        .join(" ")
 }

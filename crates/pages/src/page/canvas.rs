@@ -156,8 +156,13 @@ impl Canvas {
     }
 
     pub fn circle(&mut self, x: f64, y: f64, radius: f64, fill: &str) {
-        let _ =
-            writeln!(self.body, "<circle cx=\"{}\" cy=\"{}\" r=\"{}\" fill=\"{fill}\"/>", short(x), short(y), short(radius));
+        let _ = writeln!(
+            self.body,
+            "<circle cx=\"{}\" cy=\"{}\" r=\"{}\" fill=\"{fill}\"/>",
+            short(x),
+            short(y),
+            short(radius)
+        );
     }
 
     /// Draws what `draw` draws, but only inside `rect`.
@@ -191,7 +196,8 @@ impl Canvas {
 }
 
 fn stroked(stroke: Stroke) -> String {
-    let dash = if stroke.dash.is_empty() { String::new() } else { format!(" stroke-dasharray=\"{}\"", stroke.dash) };
+    let dash =
+        if stroke.dash.is_empty() { String::new() } else { format!(" stroke-dasharray=\"{}\"", stroke.dash) };
     let cap = if stroke.dash.starts_with("1.5") { " stroke-linecap=\"round\"" } else { "" };
     format!(" stroke=\"{}\" stroke-width=\"{}\"{dash}{cap}", stroke.colour, short(stroke.width))
 }

@@ -47,9 +47,13 @@ pub(super) fn step_corners(curve: &Curve, value: impl Fn(usize, Side) -> f64) ->
 
 /// A value of the curve at any z, by straight lines between its points; `normal` and `side` choose the column.
 pub(super) fn between(z: &[f64], values: &[f64], at: f64) -> f64 {
-    let above = z.partition_point(|&point| point < at).min(z.len().saturating_sub(1)).min(values.len().saturating_sub(1));
+    let above = z
+        .partition_point(|&point| point < at)
+        .min(z.len().saturating_sub(1))
+        .min(values.len().saturating_sub(1));
     let below = above.saturating_sub(1);
-    let (Some(&x0), Some(&x1), Some(&y0), Some(&y1)) = (z.get(below), z.get(above), values.get(below), values.get(above))
+    let (Some(&x0), Some(&x1), Some(&y0), Some(&y1)) =
+        (z.get(below), z.get(above), values.get(below), values.get(above))
     else {
         return 0.0;
     };
@@ -73,7 +77,8 @@ pub(super) fn draw(canvas: &mut Canvas, outer: Rect, report: &Report) {
         y_caption: "probability of z or less",
         legend: &legend,
     };
-    let frame = Frame::draw(canvas, outer, &spec, Axis::straight(-SHOWN_Z, SHOWN_Z), Axis::straight(0.0, 1.0));
+    let frame =
+        Frame::draw(canvas, outer, &spec, Axis::straight(-SHOWN_Z, SHOWN_Z), Axis::straight(0.0, 1.0));
     let curve = &report.curve;
     let actual: Vec<(f64, f64)> = step_corners(curve, |index, side| match side {
         Side::At => curve.at_or_below[index],
@@ -110,8 +115,23 @@ fn widest_gap(canvas: &mut Canvas, frame: &Frame, report: &Report) {
         canvas.polygon(&[(x, top - 1.0), (x - 5.5, top - 11.0), (x + 5.5, top - 11.0)], mark);
         canvas.polygon(&[(x, bottom + 1.0), (x - 5.5, bottom + 11.0), (x + 5.5, bottom + 11.0)], mark);
     }
-    let side = if side == Side::JustBelow && curve.below != curve.at_or_below { "just below " } else { "at " };
+    let side =
+        if side == Side::JustBelow && curve.below != curve.at_or_below { "just below " } else { "at " };
     let left = frame.plot.left + 9.0;
-    frame.note(canvas, left, frame.plot.top + 18.0, &format!("widest gap {}", figure(&distance)), mark, Anchor::Start);
-    frame.note(canvas, left, frame.plot.top + 35.0, &format!("{side}z = {}", number(at_z, 4)), mark, Anchor::Start);
+    frame.note(
+        canvas,
+        left,
+        frame.plot.top + 18.0,
+        &format!("widest gap {}", figure(&distance)),
+        mark,
+        Anchor::Start,
+    );
+    frame.note(
+        canvas,
+        left,
+        frame.plot.top + 35.0,
+        &format!("{side}z = {}", number(at_z, 4)),
+        mark,
+        Anchor::Start,
+    );
 }

@@ -52,7 +52,10 @@ fn sentence(report: &Report) -> String {
     }
     if let Some(error) = report.claim.actual.filter(|actual| actual.basis == Basis::Confidence) {
         let confidence = report.scenario.method.confidence;
-        parts.push(format!("error of the claim's figure ±{} (confidence {confidence})", error_only(error.error)));
+        parts.push(format!(
+            "error of the claim's figure ±{} (confidence {confidence})",
+            error_only(error.error)
+        ));
     }
     if let Some(draws) = method.draws {
         parts.push(format!("{} draws", whole(draws)));

@@ -77,9 +77,10 @@ impl Frame {
             }
             canvas.line((place, plot.top), (place, plot.bottom), palette.rule_line());
             let half = width(&tick.label, SMALL) / 2.0;
-            if place - half > taken && place + half <= outer.right + 8.0 {
-                canvas.text(place, plot.bottom + 17.0, &tick.label, SMALL, palette.muted, Anchor::Middle);
-                taken = place + half + 6.0;
+            let middle = place.min(outer.right - half);
+            if middle - half > taken {
+                canvas.text(middle, plot.bottom + 17.0, &tick.label, SMALL, palette.muted, Anchor::Middle);
+                taken = middle + half + 6.0;
             }
         }
         canvas.outline(plot, palette.axis_line());
@@ -88,7 +89,14 @@ impl Frame {
             None => spec.x_caption.to_owned(),
         };
         let caption = shortened(&caption, SMALL, plot.width(), false);
-        canvas.text((plot.left + plot.right) / 2.0, plot.bottom + 34.0, &caption, SMALL, palette.muted, Anchor::Middle);
+        canvas.text(
+            (plot.left + plot.right) / 2.0,
+            plot.bottom + 34.0,
+            &caption,
+            SMALL,
+            palette.muted,
+            Anchor::Middle,
+        );
         frame
     }
 
@@ -102,6 +110,11 @@ impl Frame {
 
     pub fn place(&self, x: f64, y: f64) -> (f64, f64) {
         (self.x_place(x), self.y_place(y))
+    }
+
+    /// Whether a label that begins at `x` ends inside the plot.
+    pub fn has_room(&self, x: f64, text: &str) -> bool {
+        x + width(text, SMALL) <= self.plot.right - 6.0
     }
 
     /// A label inside the plot, on a patch of the plot's colour so that lines don't cross it.

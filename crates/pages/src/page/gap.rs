@@ -29,7 +29,9 @@ pub(super) fn draw(canvas: &mut Canvas, outer: Rect, report: &Report) {
     let largest = gap.iter().chain(&expansion).map(|point| point.1.abs()).fold(0.0, f64::max).max(1e-15);
     let allowed = allowed(report);
     // A band much wider than the gap would press the curves flat: it then goes on beyond the frame.
-    let reach = allowed.filter(|&allowed| allowed <= 4.0 * largest).map_or(largest, |allowed| largest.max(allowed)) * 1.12;
+    let reach =
+        allowed.filter(|&allowed| allowed <= 4.0 * largest).map_or(largest, |allowed| largest.max(allowed))
+            * 1.12;
 
     let mut legend = vec![(Sample::Line(palette.actual_line()), "actual − normal".to_owned())];
     if !expansion.is_empty() {
@@ -45,12 +47,16 @@ pub(super) fn draw(canvas: &mut Canvas, outer: Rect, report: &Report) {
         y_caption: "difference of probabilities",
         legend: &legend,
     };
-    let frame = Frame::draw(canvas, outer, &spec, Axis::straight(-SHOWN_Z, SHOWN_Z), Axis::straight(-reach, reach));
+    let frame =
+        Frame::draw(canvas, outer, &spec, Axis::straight(-SHOWN_Z, SHOWN_Z), Axis::straight(-reach, reach));
     canvas.clipped(frame.plot.shrunk(-1.0), |canvas| {
         if let Some(allowed) = allowed {
             let (top, bottom) = (frame.y_place(allowed), frame.y_place(-allowed));
             let plot = frame.plot;
-            canvas.rect(Rect::new(plot.left, top.max(plot.top), plot.right, bottom.min(plot.bottom)), palette.band);
+            canvas.rect(
+                Rect::new(plot.left, top.max(plot.top), plot.right, bottom.min(plot.bottom)),
+                palette.band,
+            );
             for edge in [top, bottom] {
                 canvas.line((plot.left, edge), (plot.right, edge), palette.allowed_line());
             }
@@ -73,7 +79,9 @@ fn allowed(report: &Report) -> Option<f64> {
 
 /// −φ(z) γ (z² − 1)/6 with γ the skewness of the sum (Esseen 1945; Edgeworth's first term), where it exists.
 fn one_term(report: &Report) -> Vec<(f64, f64)> {
-    let Some(skewness) = report.sum.skewness.filter(|skewness| skewness.is_finite()) else { return Vec::new() };
+    let Some(skewness) = report.sum.skewness.filter(|skewness| skewness.is_finite()) else {
+        return Vec::new();
+    };
     if points(&report.curve) < 2 {
         return Vec::new();
     }

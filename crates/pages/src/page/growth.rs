@@ -20,7 +20,8 @@ pub(super) fn draw(canvas: &mut Canvas, outer: Rect, report: &Report) {
         return;
     }
     let palette = canvas.palette;
-    let allowed = (report.claim.kind == "curve" && report.claim.allowed > 0.0).then_some(report.claim.allowed);
+    let allowed =
+        (report.claim.kind == "curve" && report.claim.allowed > 0.0).then_some(report.claim.allowed);
     let planned = match &report.scenario.source {
         Source::Like { n, .. } => Some(*n as f64),
         Source::Parts { .. } | Source::Groups { .. } => None,
@@ -37,7 +38,12 @@ pub(super) fn draw(canvas: &mut Canvas, outer: Rect, report: &Report) {
     if let Some(allowed) = allowed {
         legend.push((Sample::Line(palette.allowed_line()), format!("allowed {}", number(allowed, 3))));
     }
-    let spec = FrameSpec { heading: HEADING, x_caption: "n", y_caption: "distance to the normal law", legend: &legend };
+    let spec = FrameSpec {
+        heading: HEADING,
+        x_caption: "n",
+        y_caption: "distance to the normal law",
+        legend: &legend,
+    };
     let all = || distance.iter().chain(&bound).chain(&leading);
     let lowest_n = all().map(|point| point.0).chain(planned).fold(f64::INFINITY, f64::min);
     let highest_n = all().map(|point| point.0).chain(planned).chain(safe_from).fold(1.0, f64::max);
@@ -54,7 +60,11 @@ pub(super) fn draw(canvas: &mut Canvas, outer: Rect, report: &Report) {
         }
         for (n, stroke) in [(safe_from, palette.safe_line()), (planned, palette.planned_line())] {
             if let Some(n) = n {
-                canvas.line((frame.x_place(n), frame.plot.top), (frame.x_place(n), frame.plot.bottom), stroke);
+                canvas.line(
+                    (frame.x_place(n), frame.plot.top),
+                    (frame.x_place(n), frame.plot.bottom),
+                    stroke,
+                );
             }
         }
         canvas.polyline(&placed(&bound), palette.bound_line());
@@ -67,8 +77,8 @@ pub(super) fn draw(canvas: &mut Canvas, outer: Rect, report: &Report) {
     // Two rows at the foot of the plot, where falling curves leave most room; they never meet.
     let mut row = |n: f64, y: f64, text: String, colour: &str| {
         let x = frame.x_place(n);
-        let right = x > (frame.plot.left + frame.plot.right) / 2.0;
-        let (x, anchor) = if right { (x - 7.0, Anchor::End) } else { (x + 7.0, Anchor::Start) };
+        let (x, anchor) =
+            if frame.has_room(x + 7.0, &text) { (x + 7.0, Anchor::Start) } else { (x - 7.0, Anchor::End) };
         frame.note(canvas, x, y, &text, colour, anchor);
     };
     if let Some(n) = planned {
@@ -86,7 +96,9 @@ fn series(report: &Report, values: &[Option<f64>]) -> Vec<(f64, f64)> {
         .n
         .iter()
         .zip(values)
-        .filter_map(|(&n, value)| value.filter(|value| value.is_finite() && *value > 0.0).map(|value| (n as f64, value)))
+        .filter_map(|(&n, value)| {
+            value.filter(|value| value.is_finite() && *value > 0.0).map(|value| (n as f64, value))
+        })
         .filter(|point| point.0 > 0.0)
         .collect()
 }

@@ -4,8 +4,8 @@ use super::canvas::{Anchor, Canvas, Rect};
 use super::style::Stroke;
 use super::text::{Font, fitted, shortened, width};
 use crate::numbers::{figure, number, optional, whole};
-use gaussgap_conclusions::words::plan_sentence;
 use gaussgap_conclusions::report::{Report, State};
+use gaussgap_conclusions::words::plan_sentence;
 
 const BADGE: Font = Font::bold(17.0);
 const LABEL: Font = Font::regular(11.5);
@@ -18,7 +18,8 @@ pub(super) fn draw(canvas: &mut Canvas, area: Rect, report: &Report) -> f64 {
     let title = title.unwrap_or("Normal approximation of a sum");
     let (lines, font) = fitted(title, &[27.0, 24.0, 21.0, 18.0, 16.0], true, area.width(), 2);
     let y = canvas.lines(area.left, area.top + font.size, &lines, font, palette.ink);
-    let (lines, font) = fitted(&plan_sentence(&report.scenario), &[16.0, 15.0, 14.0, 13.0], false, area.width(), 3);
+    let (lines, font) =
+        fitted(&plan_sentence(&report.scenario), &[16.0, 15.0, 14.0, 13.0], false, area.width(), 3);
     let y = canvas.lines(area.left, y - 4.0, &lines, font, palette.muted);
     let y = finding(canvas, Rect { top: y - 2.0, ..area }, report);
     strip(canvas, Rect { top: y + 6.0, ..area }, report)
@@ -110,12 +111,17 @@ fn cells(report: &Report) -> Vec<(String, String)> {
         add("difference", optional(claim.difference, 4));
     }
     add("allowed difference", format!("±{}", number(claim.allowed, 4)));
-    let nominal = |value: Option<f64>| value.map_or_else(String::new, |value| format!(" (nominal {})", number(value, 4)));
+    let nominal = |value: Option<f64>| {
+        value.map_or_else(String::new, |value| format!(" (nominal {})", number(value, 4)))
+    };
     if claim.miss_low.is_some() {
         add(&format!("misses, interval too low{}", nominal(claim.nominal_miss_low)), shown(&claim.miss_low));
     }
     if claim.miss_high.is_some() {
-        add(&format!("misses, interval too high{}", nominal(claim.nominal_miss_high)), shown(&claim.miss_high));
+        add(
+            &format!("misses, interval too high{}", nominal(claim.nominal_miss_high)),
+            shown(&claim.miss_high),
+        );
     }
     if let Some(quantile) = claim.normal_quantile {
         add("normal quantile", number(quantile, 6));

@@ -53,7 +53,11 @@ fn drawn(report: &Report, style: &PageStyle) -> Canvas {
     let foot = sheet.bottom - footer::height(report, sheet.width());
     let head = header::draw(&mut canvas, sheet, report) + 20.0;
     let body = Rect { top: head, bottom: foot - 14.0, ..sheet };
-    if width > height { three_columns(&mut canvas, body, report) } else { two_columns(&mut canvas, body, report) }
+    if width > height {
+        three_columns(&mut canvas, body, report)
+    } else {
+        two_columns(&mut canvas, body, report)
+    }
     footer::draw(&mut canvas, Rect { top: foot, ..sheet }, report);
     canvas
 }

@@ -14,8 +14,11 @@ static FONTS: LazyLock<Arc<usvg::fontdb::Database>> = LazyLock::new(|| {
 
 /// Draws an SVG of the given size (in units) with `scale` dots per unit.
 pub(super) fn png(svg: &str, size: (u32, u32), scale: f32) -> Vec<u8> {
-    let options =
-        usvg::Options { font_family: "DejaVu Sans".to_owned(), fontdb: Arc::clone(&FONTS), ..usvg::Options::default() };
+    let options = usvg::Options {
+        font_family: "DejaVu Sans".to_owned(),
+        fontdb: Arc::clone(&FONTS),
+        ..usvg::Options::default()
+    };
     // Our own SVG is well-formed whatever the report says, and the sizes are at most 4 × 1754: neither can fail.
     let tree = usvg::Tree::from_str(svg, &options).expect("the page's own SVG is well-formed");
     let dots = |length: u32| (length as f32 * scale).round() as u32;

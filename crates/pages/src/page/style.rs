@@ -168,7 +168,14 @@ mod tests {
     fn text_can_be_read_on_both_papers() {
         for palette in [LIGHT, DARK] {
             for paper in [palette.paper, palette.panel] {
-                for text in [palette.ink, palette.muted, palette.mark, palette.holds, palette.fails, palette.undecided] {
+                for text in [
+                    palette.ink,
+                    palette.muted,
+                    palette.mark,
+                    palette.holds,
+                    palette.fails,
+                    palette.undecided,
+                ] {
                     assert!(contrast(paper, text) >= 4.5, "{text} on {paper}: {}", contrast(paper, text));
                 }
             }

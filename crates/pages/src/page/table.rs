@@ -42,7 +42,8 @@ impl Table {
         let mut y = area.top + font.size;
         for (column, (&right, &wide)) in self.columns.iter().zip(rights.iter().zip(&widths)) {
             let title = shortened(column.title, title_font, wide, false);
-            let (x, anchor) = if column.numeric { (right, Anchor::End) } else { (right - wide, Anchor::Start) };
+            let (x, anchor) =
+                if column.numeric { (right, Anchor::End) } else { (right - wide, Anchor::Start) };
             canvas.text(x, y, &title, title_font, palette.muted, anchor);
         }
         canvas.line((area.left, y + 6.0), (area.right, y + 6.0), palette.axis_line());
@@ -67,8 +68,11 @@ impl Table {
                 canvas.text(area.left, y, &more, font, palette.muted, Anchor::Start);
                 return y + 6.0;
             }
-            for ((lines, column), (&right, &wide)) in cells.iter().zip(&self.columns).zip(rights.iter().zip(&widths)) {
-                let (x, anchor) = if column.numeric { (right, Anchor::End) } else { (right - wide, Anchor::Start) };
+            for ((lines, column), (&right, &wide)) in
+                cells.iter().zip(&self.columns).zip(rights.iter().zip(&widths))
+            {
+                let (x, anchor) =
+                    if column.numeric { (right, Anchor::End) } else { (right - wide, Anchor::Start) };
                 for (line, text) in lines.iter().enumerate() {
                     canvas.text(x, y + line as f64 * font.line_height(), text, font, palette.ink, anchor);
                 }
@@ -96,7 +100,8 @@ impl Table {
                 .collect();
             let gaps = GAP * self.columns.len().saturating_sub(1) as f64;
             if let Some(wide) = wide {
-                let others: f64 = widths.iter().enumerate().filter(|(index, _)| *index != wide).map(|(_, w)| w).sum();
+                let others: f64 =
+                    widths.iter().enumerate().filter(|(index, _)| *index != wide).map(|(_, w)| w).sum();
                 let left = room - gaps - others;
                 // The wide column gets what it asks for or half of the room, before the font gets smaller.
                 if left >= widths[wide].min(0.4 * room) || size == 9.0 {

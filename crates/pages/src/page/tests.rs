@@ -25,7 +25,11 @@ fn assert_readable(report: &Report, what: &str) {
                 let other = second.room;
                 let overlap = room.left.max(other.left) + 0.5 < room.right.min(other.right)
                     && room.top.max(other.top) + 0.5 < room.bottom.min(other.bottom);
-                assert!(!overlap, "{what}, {size:?}: \"{}\" and \"{}\" overlap: {room:?} {other:?}", first.text, second.text);
+                assert!(
+                    !overlap,
+                    "{what}, {size:?}: \"{}\" and \"{}\" overlap: {room:?} {other:?}",
+                    first.text, second.text
+                );
             }
         }
     }
@@ -36,7 +40,9 @@ fn text_of(svg: &str) -> String {
     let mut text = String::new();
     for element in svg.split("<text ").skip(1) {
         let content = element.split_once('>').unwrap().1.split_once("</text>").unwrap().0;
-        text.push_str(&content.replace("&lt;", "<").replace("&gt;", ">").replace("&quot;", "\"").replace("&amp;", "&"));
+        text.push_str(
+            &content.replace("&lt;", "<").replace("&gt;", ">").replace("&quot;", "\"").replace("&amp;", "&"),
+        );
         text.push(' ');
     }
     text
@@ -100,7 +106,8 @@ fn the_usual_page_is_readable() {
 #[test]
 fn a_title_of_200_characters_and_unbreakable_words_are_readable() {
     let mut report = fixture::exponential();
-    report.scenario.title = Some("Quillmere boarding with a rather long title & <signs> ".repeat(4).chars().take(200).collect());
+    report.scenario.title =
+        Some("Quillmere boarding with a rather long title & <signs> ".repeat(4).chars().take(200).collect());
     report.verdict.because = "because of this and that ".repeat(30);
     assert_readable(&report, "long title");
     report.scenario.title = Some("W".repeat(200));
@@ -109,8 +116,16 @@ fn a_title_of_200_characters_and_unbreakable_words_are_readable() {
     report.method.detail = "detail ".repeat(100);
     report.remedies =
         vec![Remedy { name: "remedy ".repeat(30), actual: None, holds: false, note: "note ".repeat(50) }; 12];
-    report.rules_of_thumb =
-        vec![RuleOfThumb { rule: "rule ".repeat(40), source: "s".into(), n: None, says: "not enough".into(), agrees: None }; 9];
+    report.rules_of_thumb = vec![
+        RuleOfThumb {
+            rule: "rule ".repeat(40),
+            source: "s".into(),
+            n: None,
+            says: "not enough".into(),
+            agrees: None
+        };
+        9
+    ];
     assert_readable(&report, "long words");
     let svg = to_svg(&report, &PageStyle::default());
     assert!(svg.contains(&"W".repeat(20)) && svg.contains('…'));
@@ -175,7 +190,10 @@ fn missing_figures_are_said_to_be_missing() {
     }
     assert_readable(&report, "missing");
     let text = text_of(&to_svg(&report, &PageStyle::default()));
-    assert!(text.contains("without a finite variance") && !text.contains("NaN") && !text.contains("inf"), "{text}");
+    assert!(
+        text.contains("without a finite variance") && !text.contains("NaN") && !text.contains("inf"),
+        "{text}"
+    );
 }
 
 #[test]
@@ -205,7 +223,9 @@ fn the_picture_has_text_and_lines() {
         for y in room.top as u32..room.bottom as u32 {
             for x in room.left as u32..room.right as u32 {
                 let pixel = pixels.pixel(x, y).unwrap();
-                count += u32::from(u32::from(pixel.red()) + u32::from(pixel.green()) + u32::from(pixel.blue()) < 480);
+                count += u32::from(
+                    u32::from(pixel.red()) + u32::from(pixel.green()) + u32::from(pixel.blue()) < 480,
+                );
             }
         }
         f64::from(count) / (room.width() * room.height()).max(1.0)

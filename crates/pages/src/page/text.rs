@@ -39,7 +39,9 @@ impl Widths {
         }
         let Some(font) = &self.font else { return self.missing };
         let Some(glyph) = font.charmap().map(c) else { return self.missing };
-        font.glyph_metrics(Size::new(1.0), LocationRef::default()).advance_width(glyph).unwrap_or(self.missing)
+        font.glyph_metrics(Size::new(1.0), LocationRef::default())
+            .advance_width(glyph)
+            .unwrap_or(self.missing)
     }
 }
 
@@ -74,10 +76,12 @@ pub(super) fn width(text: &str, font: Font) -> f64 {
 
 /// Text as it can be drawn: one line, control characters and runs of white space turned into single spaces.
 pub(super) fn clean(text: &str) -> String {
-    text.split(|c: char| (c.is_whitespace() && c != '\u{a0}' && c != '\u{202f}') || c.is_control() || is_noncharacter(c))
-        .filter(|word| !word.is_empty())
-        .collect::<Vec<_>>()
-        .join(" ")
+    text.split(|c: char| {
+        (c.is_whitespace() && c != '\u{a0}' && c != '\u{202f}') || c.is_control() || is_noncharacter(c)
+    })
+    .filter(|word| !word.is_empty())
+    .collect::<Vec<_>>()
+    .join(" ")
 }
 
 /// Characters XML 1.0 has no place for.
@@ -171,7 +175,8 @@ mod tests {
     fn the_font_has_every_character_the_page_uses() {
         for bytes in [REGULAR, BOLD] {
             let font = FontRef::new(bytes).unwrap();
-            for c in "ΦσμγκρΔ√≤≥±×·−–—…⁰¹²³⁴⁵⁶⁷⁸⁹⁻₀₁₂→✓✗°∞½²\u{202f}".chars() {
+            for c in "ΦσμγκρΔ√≤≥±×·−–—…⁰¹²³⁴⁵⁶⁷⁸⁹⁻₀₁₂→✓✗°∞½²\u{202f}".chars()
+            {
                 assert!(font.charmap().map(c).is_some(), "{c} {:x}", c as u32);
             }
         }
@@ -187,7 +192,14 @@ mod tests {
     #[test]
     fn lines_fit_whatever_the_text() {
         let font = Font::regular(13.0);
-        for text in ["a", "", "one two three four five", &"x".repeat(300), "Φ ≤ √n ".repeat(30).as_str(), "日本語 text"] {
+        for text in [
+            "a",
+            "",
+            "one two three four five",
+            &"x".repeat(300),
+            "Φ ≤ √n ".repeat(30).as_str(),
+            "日本語 text",
+        ] {
             for limit in [25.0, 60.0, 300.0] {
                 for most in [1, 2, 50] {
                     let lines = wrapped(text, font, limit, most);

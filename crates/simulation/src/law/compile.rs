@@ -6,8 +6,8 @@ use super::form::Form;
 use super::opaque::Opaque;
 use super::probabilities::Prepared;
 use super::{
-    ClosedFamily, ClosedForm, Law, LawParts, LawProblem, LawSpec, MixturePart, Moments, Piece, families,
-    lattice, moments,
+    ClosedFamily, ClosedForm, Law, LawParts, LawProblem, LawSpec, MixturePart, Moments, Piece, compound,
+    families, lattice, moments,
 };
 
 /// Deepest nesting of operations.
@@ -80,6 +80,16 @@ fn form(spec: &LawSpec, pointer: &str, depth: usize, problems: &mut Vec<LawProbl
             let law = inner(law, "law", problems)?;
             let result = good.then(|| law.round(*step))?;
             accepted(result, pointer, problems)
+        }
+        LawSpec::Compound { count, each } => {
+            let count = inner(count, "count", problems);
+            let each = inner(each, "each", problems);
+            let (count, each) = (count?, each?);
+            if let Err(message) = compound::check_count(&count) {
+                Checks::new(&format!("{pointer}/count"), problems).problem("", message);
+                return None;
+            }
+            accepted(compound::compile(count, each), pointer, problems)
         }
         _ => families::compile(spec, &mut Checks::new(pointer, problems)),
     }
@@ -156,7 +166,7 @@ fn representable(form: &Form) -> bool {
 }
 
 /// The facts about a normal form.
-fn finish(mut form: Form) -> Result<Law, String> {
+pub(super) fn finish(mut form: Form) -> Result<Law, String> {
     form.merge_atoms();
     form.pieces.retain(|piece| piece.mass() > 0.0);
     if form.atoms.is_empty() && form.pieces.is_empty() && form.opaque.is_empty() {

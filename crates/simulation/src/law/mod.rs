@@ -7,7 +7,9 @@
 
 mod checks;
 mod compile;
+mod compound;
 pub mod density;
+mod expression;
 mod families;
 mod form;
 mod lattice;

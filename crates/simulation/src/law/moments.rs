@@ -5,6 +5,7 @@ use super::Piece;
 use super::checks::compensated_sum;
 use super::density::StandardMoments;
 use super::form::Form;
+use super::opaque::Opaque;
 use super::quadrature::standard_rule;
 
 /// Moments of a law without units: ratios to powers of the sd.
@@ -43,7 +44,7 @@ pub(crate) fn of_form(form: &Form) -> LawMoments {
     };
     let third_absolute_ratio = match standard {
         StandardMoments { mean: Some(mean), sd: Some(sd), .. }
-            if sd > 0.0 && form.opaque.is_empty() && has_moment(form, 3.0) =>
+            if sd > 0.0 && form.opaque.is_empty() && tail_index(form) > 3.0 =>
         {
             Some(third_absolute(form, mean, sd))
         }
@@ -54,22 +55,9 @@ pub(crate) fn of_form(form: &Form) -> LawMoments {
 
 /// sup of r with E|X|^r < ∞.
 pub(crate) fn tail_index(form: &Form) -> f64 {
-    let pieces = form.pieces.iter().map(piece_tail_index);
-    let opaque = form.opaque.iter().map(|o| {
-        let (upper, lower) = o.tail_indices();
-        upper.min(lower)
-    });
-    pieces.chain(opaque).fold(f64::INFINITY, f64::min)
-}
-
-fn has_moment(form: &Form, order: f64) -> bool {
-    tail_index(form) > order
-}
-
-fn piece_tail_index(piece: &Piece) -> f64 {
-    let upper = if piece.high.is_finite() { f64::INFINITY } else { piece.density.upper_tail_index() };
-    let lower = if piece.low.is_finite() { f64::INFINITY } else { piece.density.lower_tail_index() };
-    upper.min(lower)
+    let pieces = form.pieces.iter().map(Piece::tail_indices);
+    let opaque = form.opaque.iter().map(Opaque::tail_indices);
+    pieces.chain(opaque).fold(f64::INFINITY, |least, (upper, lower)| least.min(upper).min(lower))
 }
 
 /// Moments of a mixture of components about their common mean.
@@ -133,7 +121,8 @@ fn of_piece(piece: &Piece) -> StandardMoments {
     {
         return moments.image(piece.add, piece.multiply);
     }
-    let index = piece_tail_index(piece);
+    let (upper, lower) = piece.tail_indices();
+    let index = upper.min(lower);
     let mut nodes = Nodes::of(piece);
     let none = StandardMoments { mean: None, sd: None, skewness: None, excess_kurtosis: None };
     if index <= 1.0 {

@@ -37,6 +37,13 @@ impl Piece {
         (self.low, self.high) == self.density.support()
     }
 
+    /// sup of r with E max(X, 0)^r < ∞ on the piece, and the same for −X.
+    pub fn tail_indices(&self) -> (f64, f64) {
+        let upper = if self.high.is_finite() { f64::INFINITY } else { self.density.upper_tail_index() };
+        let lower = if self.low.is_finite() { f64::INFINITY } else { self.density.lower_tail_index() };
+        if self.multiply > 0.0 { (upper, lower) } else { (lower, upper) }
+    }
+
     /// Probability carried by the piece.
     pub fn mass(&self) -> f64 {
         self.factor * self.between(self.low, self.high)

@@ -3,7 +3,7 @@
 use super::form::same;
 use super::opaque::Opaque;
 use super::sampler::Sampler;
-use super::{Law, LawParts};
+use super::{Law, LawParts, Piece};
 use std::sync::{Arc, OnceLock};
 
 /// A normal form with what is computed from it once.
@@ -216,6 +216,15 @@ impl Law {
             Some(atom) if same(atom.value, x) => atom.value,
             _ => x,
         }
+    }
+
+    /// sup of r with E max(X, 0)^r < ∞, and the same for −X; infinite for light tails.
+    pub fn tail_indices(&self) -> (f64, f64) {
+        let pieces = self.pieces.iter().map(Piece::tail_indices);
+        let opaque = self.inner.opaque.iter().map(Opaque::tail_indices);
+        pieces
+            .chain(opaque)
+            .fold((f64::INFINITY, f64::INFINITY), |(up, down), (u, d)| (up.min(u), down.min(d)))
     }
 
     /// One draw. [`Law::sampler`] gives the prepared sampler for many.

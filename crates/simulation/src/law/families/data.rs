@@ -69,7 +69,10 @@ fn plain(sorted: &[f64]) -> Form {
 fn with_tail(sorted: &[f64], above_quantile: f64, checks: &mut Checks) -> Option<Form> {
     let place = "tail/above_quantile";
     if !(above_quantile > 0.0 && above_quantile < 1.0) {
-        checks.problem(place, format!("must lie between 0 and 1, ends excluded (got {})", show(above_quantile)));
+        checks.problem(
+            place,
+            format!("must lie between 0 and 1, ends excluded (got {})", show(above_quantile)),
+        );
         return None;
     }
     let count = sorted.len();
@@ -81,7 +84,10 @@ fn with_tail(sorted: &[f64], above_quantile: f64, checks: &mut Checks) -> Option
     if excesses.len() < FEWEST_EXCESSES {
         checks.problem(
             place,
-            format!("must leave at least {FEWEST_EXCESSES} values above it to fit a tail to (got {})", excesses.len()),
+            format!(
+                "must leave at least {FEWEST_EXCESSES} values above it to fit a tail to (got {})",
+                excesses.len()
+            ),
         );
         return None;
     }

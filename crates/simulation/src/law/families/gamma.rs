@@ -15,14 +15,14 @@ use std::sync::Arc;
 
 /// The gamma density with scale 1.
 #[derive(Debug)]
-pub(crate) struct Gamma {
+struct Gamma {
     shape: f64,
     ln_gamma: f64,
     sampler: Option<rand_distr::Gamma<f64>>,
 }
 
 impl Gamma {
-    pub(crate) fn new(shape: f64) -> Self {
+    fn new(shape: f64) -> Self {
         Self {
             shape,
             ln_gamma: special::gamma::ln_gamma(shape),
@@ -31,13 +31,16 @@ impl Gamma {
     }
 }
 
+/// The density of the shape with scale 1.
+pub(super) fn density(shape: f64) -> Arc<dyn Density> {
+    if shape == 1.0 { Arc::new(super::exponential::Exponential) } else { Arc::new(Gamma::new(shape)) }
+}
+
 pub(super) fn compile(shape: f64, scale: f64, checks: &mut Checks) -> Option<Form> {
     if !(checks.within("shape", shape, 1e-3, 1e12) & checks.positive("scale", scale)) {
         return None;
     }
-    let density: Arc<dyn Density> =
-        if shape == 1.0 { Arc::new(super::exponential::Exponential) } else { Arc::new(Gamma::new(shape)) };
-    Some(Form::piece(Piece::whole(density, 1.0, 0.0, scale)).with_closed_form(
+    Some(Form::piece(Piece::whole(density(shape), 1.0, 0.0, scale)).with_closed_form(
         ClosedFamily::Gamma { shape, scale: 1.0 },
         0.0,
         scale,

@@ -7,9 +7,9 @@
 use super::beta;
 use super::exponential::Exponential;
 use super::lomax::Lomax;
+use crate::law::Piece;
 use crate::law::checks::{Checks, show};
 use crate::law::form::Form;
-use crate::law::Piece;
 use std::sync::Arc;
 
 pub(super) fn compile(threshold: f64, scale: f64, shape: f64, checks: &mut Checks) -> Option<Form> {

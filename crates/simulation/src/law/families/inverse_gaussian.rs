@@ -21,17 +21,22 @@ struct InverseGaussian {
     sampler: Option<rand_distr::InverseGaussian<f64>>,
 }
 
+/// The density of mean 1.
+pub(super) fn density(shape: f64) -> Arc<dyn Density> {
+    Arc::new(InverseGaussian { shape, sampler: rand_distr::InverseGaussian::new(1.0, shape).ok() })
+}
+
 pub(super) fn compile(mean: f64, shape: f64, checks: &mut Checks) -> Option<Form> {
     if !(checks.positive("mean", mean) & checks.positive("shape", shape)) {
         return None;
     }
     let ratio = shape / mean;
     if !(1e-6..=1e12).contains(&ratio) {
-        checks.problem("shape", format!("must be between 1e-6 and 1e12 times the mean (got {})", show(shape)));
+        checks
+            .problem("shape", format!("must be between 1e-6 and 1e12 times the mean (got {})", show(shape)));
         return None;
     }
-    let density = InverseGaussian { shape: ratio, sampler: rand_distr::InverseGaussian::new(1.0, ratio).ok() };
-    Some(Form::piece(Piece::whole(Arc::new(density), 1.0, 0.0, mean)).with_closed_form(
+    Some(Form::piece(Piece::whole(density(ratio), 1.0, 0.0, mean)).with_closed_form(
         ClosedFamily::InverseGaussian { mean: 1.0, shape: ratio },
         0.0,
         mean,
@@ -85,8 +90,7 @@ impl Density for InverseGaussian {
         Some(-2.0 * s / (1.0 + (1.0 + 2.0 * s / self.shape).sqrt()))
     }
     fn skeleton(&self) -> Vec<f64> {
-        let mut points =
-            quantile_points(|p| self.quantile(p).max(1e-290), |q| self.quantile_above(q));
+        let mut points = quantile_points(|p| self.quantile(p).max(1e-290), |q| self.quantile_above(q));
         // x⁴ f(x) peaks far out for small shapes: rate φ/2 beyond the last quantile.
         if let Some(&last) = points.last() {
             points.extend([1.0, 2.0, 3.0].map(|i| last + i * 20.0 / self.shape));

@@ -168,8 +168,10 @@ impl OpaqueLaw for LongTable {
             }
             ClosedFamily::Poisson { rate } => poisson_draw(rate, random),
             // The number of failures is a Poisson number whose rate is a gamma number.
-            ClosedFamily::NegativeBinomial { size, p } if size != 1.0 => rand_distr::Gamma::new(size, (1.0 - p) / p)
-                .map_or(self.mean(), |law| poisson_draw(law.sample(random), random)),
+            ClosedFamily::NegativeBinomial { size, p } if size != 1.0 => {
+                rand_distr::Gamma::new(size, (1.0 - p) / p)
+                    .map_or(self.mean(), |law| poisson_draw(law.sample(random), random))
+            }
             ClosedFamily::NegativeBinomial { p, .. } => {
                 let u: f64 = random.sample(rand::distr::OpenClosed01);
                 (u.ln() / (-p).ln_1p()).floor()

@@ -15,11 +15,16 @@ use std::sync::Arc;
 #[derive(Debug)]
 struct Normal;
 
+/// The standard normal density.
+pub(super) fn density() -> Arc<dyn Density> {
+    Arc::new(Normal)
+}
+
 pub(super) fn compile(mean: f64, sd: f64, checks: &mut Checks) -> Option<Form> {
     if !(checks.finite("mean", mean) & checks.positive("sd", sd)) {
         return None;
     }
-    Some(Form::piece(Piece::whole(Arc::new(Normal), 1.0, mean, sd)).with_closed_form(
+    Some(Form::piece(Piece::whole(density(), 1.0, mean, sd)).with_closed_form(
         ClosedFamily::Normal { mean: 0.0, sd: 1.0 },
         mean,
         sd,

@@ -1,0 +1,436 @@
+//! The transform E e^{−itX} of one summand, standardized, split into its atoms and its continuous part.
+//!
+//! For t below 1 (in units of 1/sd) the *compensated* transform ψ(t) = E(e^{−itX} − 1 + itX) is what is computed:
+//! for a million summands only t ~ 10⁻³ matters, where the transform itself is too near 1 to keep any accuracy,
+//! but ψ has full relative accuracy. ψ/t² varies slowly and is interpolated octave by octave.
+//!
+//! From t = 1 on, a stretch of density contributes e^{−ite}R_e(t) for each of its ends e, R_e being a transform
+//! along a ray ([`super::ray`]) that neither oscillates nor varies fast in ln t: it is interpolated, so that a
+//! hundred thousand frequencies cost little more than their sines.
+
+use super::ceiling::Ceiling;
+use super::chebyshev::Octaves;
+use super::stretch::{Standard, Stretch, compensated_kernel};
+use crate::law::{Density, Law};
+use num_complex::Complex64;
+use std::sync::atomic::{AtomicU64, Ordering};
+use std::sync::{Arc, OnceLock};
+
+/// Above this many atoms their compensated transform is interpolated too.
+const DIRECT_ATOMS: usize = 4;
+/// Octaves of t for which a stretch whose rays may not be turned is integrated node by node.
+const DENSE_OCTAVES: usize = 14;
+const DENSE_NODES: usize = 60_000;
+
+/// Atoms and continuous part of a transform at one t.
+#[derive(Debug, Clone, Copy)]
+pub(super) struct SplitValue {
+    /// Σ p e^{−ita}.
+    pub(super) atoms: Complex64,
+    /// ∫ e^{−itx} f(x) dx.
+    pub(super) continuous: Complex64,
+    /// Bound on the error of the sum of both.
+    pub(super) error: f64,
+}
+
+/// A largest value met so far, shared between threads; never negative.
+#[derive(Debug, Default)]
+struct Largest(AtomicU64);
+
+impl Largest {
+    fn meet(&self, value: f64) {
+        let value = if value.is_finite() { value.abs() } else { f64::MAX };
+        self.0.fetch_max(value.to_bits(), Ordering::Relaxed);
+    }
+    fn get(&self) -> f64 {
+        f64::from_bits(self.0.load(Ordering::Relaxed))
+    }
+}
+
+/// A point where stretches begin or end, with everything that leaves from it.
+#[derive(Debug)]
+struct EndPoint {
+    position: f64,
+    /// Index of the stretch and whether the point is its outer end (which enters with a minus sign).
+    parts: Vec<(usize, bool)>,
+    table: Octaves,
+    error: Largest,
+}
+
+#[derive(Debug)]
+struct PieceTransform {
+    stretches: Vec<Stretch>,
+    /// Set where the whole piece has a closed transform: factor, density, add, multiply (standardized).
+    closed: Option<(f64, Arc<dyn Density>, f64, f64)>,
+    ends: Vec<EndPoint>,
+    /// For pieces whose rays may not be turned: nodes and weights, per octave of t from 1 on.
+    dense: Vec<OnceLock<Vec<(f64, f64)>>>,
+    /// Total variation of the density, for the same pieces.
+    variation: f64,
+}
+
+/// The transform of one summand.
+#[derive(Debug)]
+pub(super) struct SummandTransform {
+    /// The law.
+    pub(super) law: Law,
+    /// Its mean and standard deviation.
+    pub(super) standard: Standard,
+    /// Standardized atoms: position, mass.
+    pub(super) atoms: Vec<(f64, f64)>,
+    /// Mass of all atoms.
+    pub(super) atom_mass: f64,
+    /// Mass of all pieces.
+    pub(super) continuous_mass: f64,
+    continuous_mean: f64,
+    pieces: Vec<PieceTransform>,
+    continuous_table: Octaves,
+    atoms_table: Octaves,
+    /// Largest error of ψ/t² met while filling the tables.
+    met: Largest,
+    ceiling: OnceLock<Ceiling>,
+    /// Error of ψ relative to t², from the quadrature rules and the moments.
+    quadrature_error: f64,
+}
+
+impl SummandTransform {
+    /// Prepares nodes and end points; the tables fill as they are used.
+    pub(super) fn new(law: &Law) -> Result<Self, String> {
+        let (Some(mean), Some(variance)) = (law.moments.mean, law.moments.variance) else {
+            return Err("a summand has no finite variance".to_owned());
+        };
+        let sd = variance.sqrt();
+        if !(sd > 0.0 && sd.is_finite() && mean.is_finite()) {
+            return Err("the standard deviation of a summand is out of range".to_owned());
+        }
+        let standard = Standard { mean, sd };
+        let atoms: Vec<(f64, f64)> = law.atoms.iter().map(|a| ((a.value - mean) / sd, a.mass)).collect();
+        let atom_mass: f64 = atoms.iter().map(|a| a.1).sum();
+        let pieces: Vec<PieceTransform> = law.pieces.iter().map(|p| PieceTransform::new(p, standard)).collect();
+        let (mut mass, mut continuous_mean, mut second, mut rule_error) = (0.0, 0.0, 0.0, 0.0);
+        let mut heavy = false;
+        for stretch in pieces.iter().flat_map(|p| &p.stretches) {
+            if let Some(first) = stretch.panels.first() {
+                mass += first.mass_from_here;
+                continuous_mean += first.mean_from_here;
+            }
+            rule_error += stretch.rule_error + stretch.mass_left_out;
+            heavy |= stretch.mass_beyond > 0.0;
+            for panel in &stretch.panels {
+                for (x, w) in panel.nodes.iter().zip(&panel.weights) {
+                    second += w * x * x;
+                }
+            }
+        }
+        second += atoms.iter().map(|(x, p)| p * x * x).sum::<f64>();
+        let spread = if heavy { (second - 1.0).max(0.0) } else { (second - 1.0).abs() };
+        let quadrature_error = rule_error + spread + (mass + atom_mass - 1.0).abs() + law.missing_mass + 2e-16;
+        Ok(Self {
+            law: law.clone(),
+            standard,
+            atoms,
+            atom_mass,
+            continuous_mass: mass,
+            continuous_mean,
+            pieces,
+            continuous_table: Octaves::new(-64, -1),
+            atoms_table: Octaves::new(-64, -1),
+            met: Largest::default(),
+            ceiling: OnceLock::new(),
+            quadrature_error,
+        })
+    }
+
+    fn compensated_continuous(&self, t: f64) -> Complex64 {
+        let mut sum = Complex64::ZERO;
+        let mut error = 0.0;
+        for stretch in self.pieces.iter().flat_map(|p| &p.stretches) {
+            let (value, stretch_error) = stretch.compensated(t);
+            sum += value;
+            error += stretch_error;
+        }
+        self.met.meet(error / (t * t));
+        sum / (t * t)
+    }
+
+    fn compensated_atoms(&self, t: f64) -> Complex64 {
+        let (mut real, mut imaginary) = (0.0, 0.0);
+        for (x, p) in &self.atoms {
+            let (re, im) = compensated_kernel(t * x);
+            real += p * re;
+            imaginary += p * im;
+        }
+        Complex64::new(real, imaginary) / (t * t)
+    }
+
+    /// Fills the tables between two frequencies, on all threads.
+    pub(super) fn prepare(&self, low: f64, high: f64) {
+        if low < 1.0 {
+            let (low, high) = (low.max(1e-18), high.min(0.999));
+            if !self.pieces.is_empty() {
+                self.continuous_table.prepare(&|t| self.compensated_continuous(t), low, high, 2e-15, &|_| 0.0);
+            }
+            if self.atoms.len() > DIRECT_ATOMS {
+                self.atoms_table.prepare(&|t| self.compensated_atoms(t), low, high, 2e-15, &|_| 0.0);
+            }
+        }
+        if high > 1.0 {
+            for piece in &self.pieces {
+                piece.prepare(low.max(1.0), high);
+            }
+        }
+    }
+
+    /// ψ of continuous part and of the atoms, both divided by t², for 0 < t < 1, with the interpolation error.
+    fn compensated(&self, t: f64) -> (Complex64, Complex64, f64) {
+        let (continuous, mut error) = if self.pieces.is_empty() {
+            (Complex64::ZERO, 0.0)
+        } else {
+            self.continuous_table.evaluate(&|t| self.compensated_continuous(t), t, 2e-15, |_| 0.0)
+        };
+        let atoms = if self.atoms.len() > DIRECT_ATOMS {
+            let (value, more) = self.atoms_table.evaluate(&|t| self.compensated_atoms(t), t, 2e-15, |_| 0.0);
+            error += more;
+            value
+        } else {
+            self.compensated_atoms(t)
+        };
+        (continuous, atoms, error)
+    }
+
+    /// ln E e^{−itX}, relative accuracy kept as t falls to 0, and its absolute error; 0 < t < 1.
+    ///
+    /// `None` where the transform is too near 0 for its logarithm to be meant.
+    pub(super) fn cumulant(&self, t: f64) -> Option<(Complex64, f64)> {
+        let (continuous, atoms, interpolation) = self.compensated(t);
+        let psi = (continuous + atoms) * (t * t);
+        let relative = interpolation + self.quadrature_error + self.met.get() + 1e-15;
+        let squared = 2.0 * psi.re + psi.norm_sqr();
+        if squared < -0.99 {
+            return None;
+        }
+        let value = Complex64::new(0.5 * squared.ln_1p(), psi.im.atan2(1.0 + psi.re));
+        Some((value, relative * t * t / (1.0 + squared).sqrt()))
+    }
+
+    /// Both parts of the transform at any t > 0.
+    pub(super) fn split(&self, t: f64) -> SplitValue {
+        if t < 1.0 {
+            let (continuous, atoms, interpolation) = self.compensated(t);
+            let (mass, mean) = (self.continuous_mass, self.continuous_mean);
+            let square = t * t;
+            let relative = interpolation + self.quadrature_error + self.met.get() + 1e-15;
+            return SplitValue {
+                atoms: if self.atoms.len() > DIRECT_ATOMS {
+                    Complex64::new(self.atom_mass, t * mean) + atoms * square
+                } else {
+                    self.direct_atoms(t)
+                },
+                continuous: Complex64::new(mass, -t * mean) + continuous * square,
+                error: relative * square + 4e-16 * mass,
+            };
+        }
+        let mut continuous = Complex64::ZERO;
+        let mut error = 1e-16 * self.atom_mass + self.law.missing_mass;
+        for piece in &self.pieces {
+            let (value, piece_error) = piece.evaluate(t);
+            continuous += value;
+            error += piece_error;
+        }
+        SplitValue { atoms: self.direct_atoms(t), continuous, error }
+    }
+
+    fn direct_atoms(&self, t: f64) -> Complex64 {
+        let (mut real, mut imaginary) = (0.0, 0.0);
+        for (x, p) in &self.atoms {
+            let (sine, cosine) = (t * x).sin_cos();
+            real += p * cosine;
+            imaginary -= p * sine;
+        }
+        Complex64::new(real, imaginary)
+    }
+
+    /// An upper bound, without oscillation, on |∫ e^{−itx} f(x) dx| for this and all larger t (t ≥ 1).
+    ///
+    /// The sum of the moduli of what leaves from each end point: each is a Laplace transform along a ray and
+    /// falls with t.
+    pub(super) fn envelope(&self, t: f64) -> f64 {
+        let sum: f64 = self.pieces.iter().map(|p| p.envelope(t)).sum();
+        sum.min(self.continuous_mass)
+    }
+
+    /// Bounds without oscillation on the transform.
+    pub(super) fn ceiling(&self) -> &Ceiling {
+        self.ceiling.get_or_init(|| Ceiling::new(self))
+    }
+
+    /// Standardized points where the density or a derivative of it jumps.
+    pub(super) fn corners(&self) -> Vec<f64> {
+        let mut corners: Vec<f64> = self
+            .pieces
+            .iter()
+            .flat_map(|p| &p.stretches)
+            .flat_map(|s| [s.start(), s.end()])
+            .flatten()
+            .collect();
+        corners.sort_by(f64::total_cmp);
+        corners.dedup();
+        corners
+    }
+
+    /// Standardized panel edges of the continuous part, ascending.
+    pub(super) fn edges(&self) -> Vec<f64> {
+        let mut edges = self.corners();
+        for panel in self.pieces.iter().flat_map(|p| &p.stretches).flat_map(|s| &s.panels) {
+            let middle = 0.5 * (panel.nodes[0] + panel.nodes[panel.nodes.len() - 1]);
+            edges.push(middle - 0.5 * panel.length);
+            edges.push(middle + 0.5 * panel.length);
+        }
+        edges.sort_by(f64::total_cmp);
+        edges.dedup_by(|a, b| (*a - *b).abs() <= 1e-13 * (1.0 + a.abs()));
+        edges
+    }
+
+    /// Nodes and probabilities of all panels.
+    pub(super) fn nodes(&self) -> impl Iterator<Item = (f64, f64)> + '_ {
+        self.pieces
+            .iter()
+            .flat_map(|p| &p.stretches)
+            .flat_map(|s| &s.panels)
+            .flat_map(|p| p.nodes.iter().copied().zip(p.weights.iter().copied()))
+    }
+}
+
+impl PieceTransform {
+    fn new(piece: &crate::law::Piece, standard: Standard) -> Self {
+        let stretches = Stretch::of_piece(piece, standard);
+        let add = (piece.add - standard.mean) / standard.sd;
+        let multiply = piece.multiply / standard.sd;
+        let (low, high) = piece.density.support();
+        let whole = piece.low <= low && piece.high >= high;
+        let closed = (whole && piece.density.log_laplace(Complex64::new(0.0, multiply)).is_some())
+            .then(|| (piece.factor, Arc::clone(&piece.density), add, multiply));
+        let mut ends: Vec<EndPoint> = Vec::new();
+        let mut dense = Vec::new();
+        let mut variation = 0.0;
+        if closed.is_none() {
+            if stretches.iter().all(|s| s.rotates) {
+                for (k, stretch) in stretches.iter().enumerate() {
+                    for (position, outer) in [(stretch.start(), false), (stretch.end(), true)] {
+                        let Some(position) = position else { continue };
+                        match ends.iter_mut().find(|e| e.position == position) {
+                            Some(end) => end.parts.push((k, outer)),
+                            None => ends.push(EndPoint {
+                                position,
+                                parts: vec![(k, outer)],
+                                table: Octaves::new(0, 50),
+                                error: Largest::default(),
+                            }),
+                        }
+                    }
+                }
+            } else {
+                dense = (0..DENSE_OCTAVES).map(|_| OnceLock::new()).collect();
+                for stretch in &stretches {
+                    variation += stretch.variation();
+                }
+            }
+        }
+        Self { stretches, closed, ends, dense, variation }
+    }
+
+    fn prepare(&self, low: f64, high: f64) {
+        for end in &self.ends {
+            end.table.prepare(&|t| self.from_point(end, t), low, high, 1e-15, &|t| self.floor(end, t));
+        }
+    }
+
+    /// Everything that leaves from one point, its own oscillation e^{−it·position} taken out.
+    fn from_point(&self, end: &EndPoint, t: f64) -> Complex64 {
+        let mut sum = Complex64::ZERO;
+        let mut error = 0.0;
+        for (k, outer) in &end.parts {
+            let value = if *outer { self.stretches[*k].from_end(t) } else { self.stretches[*k].from_start(t) };
+            sum += if *outer { -value.value } else { value.value };
+            error += value.error;
+        }
+        end.error.meet(error);
+        sum
+    }
+
+    /// Below this the sum of what leaves from a point is rounding.
+    fn floor(&self, end: &EndPoint, t: f64) -> f64 {
+        if end.parts.len() < 2 {
+            return 0.0;
+        }
+        let (k, outer) = end.parts[0];
+        let value = if outer { self.stretches[k].from_end(t) } else { self.stretches[k].from_start(t) };
+        1e-15 * value.value.norm()
+    }
+
+    fn dense_nodes(&self, t: f64) -> Option<&[(f64, f64)]> {
+        let octave = t.log2().floor().max(0.0) as usize;
+        let nodes = self.dense.get(octave)?.get_or_init(|| {
+            let longest = 8.0 / ((octave + 1) as f64).exp2();
+            let mut nodes = Vec::new();
+            for stretch in &self.stretches {
+                stretch.dense_nodes(longest, DENSE_NODES, &mut nodes);
+            }
+            nodes
+        });
+        (nodes.len() < DENSE_NODES).then_some(nodes)
+    }
+
+    fn evaluate(&self, t: f64) -> (Complex64, f64) {
+        if let Some((factor, density, add, multiply)) = &self.closed {
+            return match density.log_laplace(Complex64::new(0.0, t * multiply)) {
+                Some(log) => {
+                    let value = factor * (log - Complex64::new(0.0, t * add)).exp();
+                    let error = value.norm() * 2e-16 * (4.0 + log.norm());
+                    (value, error)
+                }
+                None => (Complex64::ZERO, *factor),
+            };
+        }
+        let mut sum = Complex64::ZERO;
+        let mut error = 0.0;
+        for end in &self.ends {
+            let (value, interpolation) =
+                end.table.evaluate(&|t| self.from_point(end, t), t, 1e-15, |t| self.floor(end, t));
+            let (sine, cosine) = (t * end.position).sin_cos();
+            sum += value * Complex64::new(cosine, -sine);
+            error += interpolation + end.error.get();
+        }
+        if !self.dense.is_empty() {
+            match self.dense_nodes(t) {
+                Some(nodes) => {
+                    for (x, w) in nodes {
+                        let (sine, cosine) = (t * x).sin_cos();
+                        sum += w * Complex64::new(cosine, -sine);
+                    }
+                    error += 1e-15;
+                }
+                None => error += f64::MAX,
+            }
+        }
+        (sum, error)
+    }
+
+    fn envelope(&self, t: f64) -> f64 {
+        if let Some((factor, density, _, multiply)) = &self.closed {
+            return match density.log_laplace(Complex64::new(0.0, t * multiply)) {
+                Some(log) => factor * log.re.exp(),
+                None => *factor,
+            };
+        }
+        let mut sum = 0.0;
+        for end in &self.ends {
+            let (value, error) = end.table.evaluate(&|t| self.from_point(end, t), t, 1e-15, |t| self.floor(end, t));
+            sum += 1.001 * value.norm() + error;
+        }
+        if !self.dense.is_empty() {
+            sum += self.variation / t;
+        }
+        sum
+    }
+}
