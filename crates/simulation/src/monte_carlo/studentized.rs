@@ -256,9 +256,13 @@ impl Sampler {
     /// Drawing by table moves the law of each value by at most its error in Kolmogorov distance. With all values but
     /// one held fixed, {T > t} is an interval in that one (x̄ − t·s/√n is concave), so its probability moves by at
     /// most twice that; so does {T < −t}, and their complement by the sum of both. Varying the values one by one
-    /// gives 4 × the error of the sum.
+    /// gives 4 × the error of the sum. A relative error of the critical values enters at most once.
     fn error(&self) -> f64 {
-        4.0 * self.drawers.iter().map(|(drawer, _)| drawer.error).sum::<f64>()
+        let critical = match &self.rule {
+            Rule::Fixed(_) => 0.0,
+            Rule::Welch(table) => table.error,
+        };
+        critical + 4.0 * self.drawers.iter().map(|(drawer, _)| drawer.error).sum::<f64>()
     }
 
     fn draw_block(&self, block: u64, counts: &mut Counts) {
