@@ -5,9 +5,9 @@
 //! the estimated degrees of freedom. μ₀ (Δ₀) is what the interval is asked to contain: the true value, or with
 //! `shift` a value that far below it.
 //!
-//! Routes, the first that applies: normal laws in closed form or by quadrature ([`super::normal_samples`]); laws
-//! on few atoms by exact enumeration ([`super::enumeration`]); lattice laws with moderately many values by the
-//! joint law of Σx and Σx² ([`super::pairs`]); simulation in batches until the caller has what is needed.
+//! Routes, the first that applies: normal laws in closed form or by quadrature (`normal_samples`); laws
+//! on few atoms by exact enumeration (`enumeration`); lattice laws with moderately many values by the
+//! joint law of Σx and Σx² (`pairs`); simulation in batches until the caller has what is needed.
 
 use super::bands::clopper_pearson;
 use super::critical::{CriticalValues, degrees_of_freedom};
