@@ -399,7 +399,7 @@ mod random_laws {
     }
 
     proptest! {
-        #![proptest_config(ProptestConfig { cases: 200, failure_persistence: None, rng_seed: proptest::test_runner::RngSeed::Fixed(20_260_101), ..ProptestConfig::default() })]
+        #![proptest_config(ProptestConfig { cases: 60, failure_persistence: None, rng_seed: proptest::test_runner::RngSeed::Fixed(20_260_101), ..ProptestConfig::default() })]
         #[test]
         fn never_panic_and_stay_finite(spec in any_law()) {
             use rand::SeedableRng;
