@@ -30,7 +30,7 @@ const REMEDY_SHARE: f64 = 0.1;
 const MOST_SIMULATED: u32 = 8;
 
 /// Simulated summands of one remedy.
-const SUMMANDS: u64 = 60_000_000;
+const SUMMANDS: u64 = 12_000_000;
 
 /// Every remedy for the claim, the cheapest for the user first: those that change only the arithmetic, then those
 /// that change the plan, then those that change what is estimated.
@@ -91,7 +91,7 @@ fn claim_with(
         let budget = StudentizedBudget {
             draws: prepared.scenario.method.draws.min((SUMMANDS / n).max(2000)),
             share: REMEDY_SHARE / f64::from(MOST_SIMULATED),
-            precision: 0.2,
+            precision: 0.5,
         };
         evaluate_studentized(&changed, laws, counts, &budget, work).map(|(facts, _)| facts)
     } else {
