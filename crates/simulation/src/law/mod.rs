@@ -18,6 +18,7 @@ mod opaque;
 mod piece;
 mod probabilities;
 mod quadrature;
+mod rounded;
 mod sampler;
 pub mod spec;
 #[cfg(test)]

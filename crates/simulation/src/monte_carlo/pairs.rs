@@ -75,7 +75,7 @@ pub(crate) fn misses(request: &StudentizedRequest, work: &Work) -> Result<Option
         }
     }
     let error = total.doubtful.abs() + joint.error + 4.0 * (-LOG_RISK).exp() + size * law.missing_mass;
-    if !(error < 1e-8) {
+    if error.is_nan() || error >= 1e-8 {
         return Ok(None);
     }
     let outcome = Outcome { low: total.low, high: total.high, error };
