@@ -50,7 +50,9 @@ fn safe_from_is_the_brute_force_integer() {
         (json!({"kind": "quantile", "p": 0.9}), 0.06),
     ];
     for law in &laws {
-        for (claim, tolerance) in &claims {
+        let cases =
+            claims.iter().flat_map(|(claim, tolerance)| [(claim, *tolerance), (claim, 1.7 * tolerance)]);
+        for (claim, tolerance) in cases {
             let value = json!({"law": law, "n": 7, "claim": claim, "tolerance": {"absolute": tolerance},
                 "search": {"up_to": 40}});
             let base = scenario(value.clone());
@@ -188,7 +190,9 @@ fn guarantees_of_a_deviation_are_ordered_and_hold() {
     assert_eq!(needed["Hoeffding"], Some(736));
 }
 
+/// Reads every bundled scenario; prints the findings with their remedies to be read aloud.
 #[test]
+#[ignore = "one bundled scenario takes minutes by inversion without optimization; run with --ignored --nocapture"]
 fn every_bundled_scenario_has_a_finding_and_a_remedy() {
     let folder = std::path::Path::new(env!("CARGO_MANIFEST_DIR")).join("../../scenarios");
     let mut paths = std::fs::read_dir(&folder)
