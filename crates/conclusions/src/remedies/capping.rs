@@ -48,6 +48,10 @@ pub(super) fn remedies(prepared: &Prepared, work: &Work) -> Result<Vec<Remedy>, 
         let exact = if downwards { law.quantile_above(share) } else { law.quantile(share) };
         // A limit that can be stated: three significant digits.
         let limit = format!("{exact:.2e}").parse::<f64>().unwrap_or(exact);
+        // A limit at or beyond the end of the law caps nothing.
+        if if downwards { limit <= law.support.0 } else { limit >= law.support.1 } {
+            continue;
+        }
         let (low, high) = if downwards { (Some(limit), None) } else { (None, Some(limit)) };
         let capped = LawSpec::Cap { law: Box::new(spec.clone()), low, high };
         let Ok(capped) = capped.compile() else { continue };
