@@ -46,8 +46,25 @@ def show(x):
 # ---------------------------------------------------------------- distances
 
 def refine(g, a, b, c):
-    """Largest g near b, a < b < c with g(b) the largest: successive parabolas, then done."""
+    """Largest g near b, a < b < c with g(b) the largest: golden sections first, then successive parabolas."""
     ga, gb, gc = g(a), g(b), g(c)
+    section = (3 - sqrt(mpf(5))) / 2
+
+    def take(x):
+        nonlocal a, b, c, ga, gb, gc
+        gx = g(x)
+        if gx > gb:
+            if x > b:
+                a, ga = b, gb
+            else:
+                c, gc = b, gb
+            b, gb = x, gx
+        elif x > b:
+            c, gc = x, gx
+        else:
+            a, ga = x, gx
+    for _ in range(16):
+        take(b + section * (c - b) if c - b > b - a else b - section * (b - a))
     for _ in range(40):
         denominator = (b - a) * (gb - gc) - (b - c) * (gb - ga)
         if denominator == 0:
@@ -55,20 +72,11 @@ def refine(g, a, b, c):
         x = b - ((b - a) ** 2 * (gb - gc) - (b - c) ** 2 * (gb - ga)) / (2 * denominator)
         if not a < x < c or x == b:
             break
-        gx = g(x)
-        moved = abs(gx - gb)
-        if gx > gb:
-            if x > b:
-                a, ga = b, gb
-            else:
-                c, gc = b, gb
-            b, gb = x, gx
-        else:
-            if x > b:
-                c, gc = x, gx
-            else:
-                a, ga = x, gx
-        if moved < mpf(10) ** -21:
+        before = gb
+        gap = abs(x - b)
+        take(x)
+        # Quadratic: a point moved by d changes the value by about d^2.
+        if abs(gb - before) < mpf(10) ** -22 and gap < mpf(10) ** -8:
             break
     return gb, b
 
@@ -89,6 +97,10 @@ def continuous_distance(cdf, special=(), low=-6, high=6, coarse=None, step=mpf("
         count = max(4, int((right - left) / step) + 1)
         margin = (right - left) * mpf(10) ** -12
         zs = [left + margin + (right - left - 2 * margin) * i / count for i in range(count + 1)]
+        # Closer and closer to the ends, where a density that starts at 0 or at infinity may turn quickly.
+        graded = [(zs[1] - zs[0]) / 2**i for i in range(24, 0, -1)]
+        zs = zs[:1] + [zs[0] + d for d in graded] + zs[1:-1] + [zs[-1] - d for d in reversed(graded)] + zs[-1:]
+        count = len(zs) - 1
         gaps = [abs(coarse(z) - phi(z)) for z in zs]
         for i in range(1, count):
             if gaps[i] >= gaps[i - 1] and gaps[i] >= gaps[i + 1] and gaps[i] > best[0] - mpf("1e-4"):

@@ -111,7 +111,9 @@ impl Ladder {
     pub(super) fn build(sum: &OneSidedSum, work: &Work) -> Result<Self, Failure> {
         let opening = sum.opening.min(if sum.n <= 4.0 { 1.1 } else { 0.7 });
         if opening < 0.25 {
-            return Err(Failure::Refused("a density may not be turned far enough into the complex plane".into()));
+            return Err(Failure::Refused(
+                "a density may not be turned far enough into the complex plane".into(),
+            ));
         }
         let add = |side: Side, saddle: Saddle, range: (f64, f64)| -> Result<Hyperbola, Failure> {
             work.check()?;

@@ -117,7 +117,10 @@ impl OneSided {
     /// Rate of the exponential upper tail in standard units of the sum: the transform is analytic for
     /// Re s > −rate.
     fn rate(&self) -> f64 {
-        self.branches.iter().map(|b| b.density.upper_exponential_rate() / b.scale).fold(f64::INFINITY, f64::min)
+        self.branches
+            .iter()
+            .map(|b| b.density.upper_exponential_rate() / b.scale)
+            .fold(f64::INFINITY, f64::min)
     }
 
     /// E e^(−sY) 1{Y > 0} for one copy.
@@ -148,8 +151,7 @@ impl Branch {
         let median = density.quantile_above(0.5 * beyond);
         let far = density.quantile_above((1e-32 * beyond).max(1e-300)).min(1e100) - start;
         let here = density.density(start);
-        let by_hazard =
-            if here > 0.0 && here.is_finite() { beyond / here } else { f64::INFINITY };
+        let by_hazard = if here > 0.0 && here.is_finite() { beyond / here } else { f64::INFINITY };
         let length = (median - start).min(by_hazard);
         if !(length > 0.0 && length.is_finite() && far.is_finite() && scale > 0.0 && scale.is_finite()) {
             return Err("a density has no scale".into());
@@ -319,7 +321,10 @@ impl OneSidedSum {
             let value = self.atom * complex_exp_m1(log);
             // The error of the exponent acts on e^log, that of e^log − 1 on the value.
             let whole = self.atom * log.re.exp();
-            return Approximate { value, error: whole * relative + 4.0 * ULP * value.norm() + value.norm() * self.atom_error() };
+            return Approximate {
+                value,
+                error: whole * relative + 4.0 * ULP * value.norm() + value.norm() * self.atom_error(),
+            };
         }
         let value = complex_exp(log);
         Approximate { value, error: value.norm() * (relative + 4.0 * ULP) }

@@ -7,8 +7,12 @@ use crate::special::gamma;
 const TABLE: &str = include_str!("../../../references/contour.txt");
 
 fn named(name: &str) -> LawSpec {
-    let lognormal =
-        |log_mean, log_sd| LawSpec::Lognormal { log_mean: Some(log_mean), log_sd: Some(log_sd), mean: None, sd: None };
+    let lognormal = |log_mean, log_sd| LawSpec::Lognormal {
+        log_mean: Some(log_mean),
+        log_sd: Some(log_sd),
+        mean: None,
+        sd: None,
+    };
     match name {
         "lomax2.3" => LawSpec::Lomax { shape: 2.3, scale: 1.0 },
         "lomax4.5" => LawSpec::Lomax { shape: 4.5, scale: 1.0 },
@@ -135,10 +139,9 @@ fn exponential_tails_keep_relative_accuracy() {
             for x in [gamma::quantile(shape, level), gamma::quantile_above(shape, level)] {
                 let z = (x - shape) / shape.sqrt();
                 let x = shape + z * shape.sqrt();
-                for (figure, expected) in [
-                    (sum.at_or_below(z), gamma::below(shape, x)),
-                    (sum.above(z), gamma::above(shape, x)),
-                ] {
+                for (figure, expected) in
+                    [(sum.at_or_below(z), gamma::below(shape, x)), (sum.above(z), gamma::above(shape, x))]
+                {
                     let error = (figure.value - expected).abs();
                     // The argument's own rounding, which the lower end magnifies.
                     let rounding = 4.0 * f64::EPSILON * gamma::density(shape, x) * (x + shape);
@@ -187,7 +190,10 @@ fn quantiles_invert() {
             let z = sum.quantile(p);
             assert!(z.error < 1e-5 * (1.0 + z.value.abs()), "{name} {p}: {z:?}");
             let (low, high) = (sum.at_or_below(z.value - z.error), sum.at_or_below(z.value + z.error));
-            assert!(low.value - low.error <= p && p <= high.value + high.error, "{name} {p}: {z:?} {low:?} {high:?}");
+            assert!(
+                low.value - low.error <= p && p <= high.value + high.error,
+                "{name} {p}: {z:?} {low:?} {high:?}"
+            );
         }
     }
     // n = 1: the law's own quantile.
@@ -196,7 +202,10 @@ fn quantiles_invert() {
     let (mean, sd) = (law.mean().expect("finite"), law.sd().expect("finite"));
     for p in [0.001, 0.4, 0.95, 0.9999] {
         let (z, expected) = (sum.quantile(p), (law.quantile(p) - mean) / sd);
-        assert!((z.value - expected).abs() <= z.error + 1e-14 * (1.0 + expected.abs()), "{p}: {z:?} {expected}");
+        assert!(
+            (z.value - expected).abs() <= z.error + 1e-14 * (1.0 + expected.abs()),
+            "{p}: {z:?} {expected}"
+        );
     }
 }
 
@@ -207,7 +216,11 @@ fn unlike_terms() {
     let spec = SumSpec {
         terms: vec![
             super::super::Term { law: law(LawSpec::Exponential { mean: 2.0 }), count: 2, multiply: 0.5 },
-            super::super::Term { law: law(LawSpec::Gamma { shape: 0.4, scale: 1.0 }), count: 3, multiply: 1.0 },
+            super::super::Term {
+                law: law(LawSpec::Gamma { shape: 0.4, scale: 1.0 }),
+                count: 3,
+                multiply: 1.0,
+            },
         ],
     };
     let sum = ContourSum::build(&spec, &Method::default(), &Work::new()).expect("one-sided");
