@@ -3,3 +3,4 @@
 pub mod command;
 pub mod files;
 pub mod shell;
+pub mod window;

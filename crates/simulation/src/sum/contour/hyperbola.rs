@@ -91,7 +91,7 @@ fn samples(
             let mut small = true;
             for (x, peak) in [low, high].into_iter().zip(&mut largest) {
                 let size = (sample.0.re * x).exp() * (sample.1.norm() + sample.2);
-                if !size.is_finite() {
+                if !(size.is_finite() && sample.2.is_finite()) {
                     return None;
                 }
                 *peak = peak.max(size);

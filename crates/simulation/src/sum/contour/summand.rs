@@ -213,6 +213,10 @@ impl Branch {
                 reach *= 1.4;
                 steps += 1;
             }
+            if -turned.re * reach > 650.0 {
+                // Beyond the range of doubles.
+                return Approximate { value: Complex64::ZERO, error: f64::INFINITY };
+            }
         }
         let top = (reach / r0).ln().max(2.0) + 0.2;
         let bottom = -(44.0 / self.exponent).ln() - 0.2;
@@ -309,10 +313,16 @@ impl OneSidedSum {
         for summand in &self.summands {
             let part = summand.continuous(s, pivot);
             let whole = part.value + summand.atom;
+            if whole.norm() < 1e-290 && part.error < 1e-290 {
+                return Approximate { value: Complex64::ZERO, error: 1e-290 };
+            }
             let count = summand.count as f64;
             let own = if self.atom > 0.0 { complex_ln_1p(part.value / summand.atom) } else { whole.ln() };
             log += count * own;
             relative += count * (part.error / whole.norm() + 2.0 * ULP * (1.0 + own.norm()));
+        }
+        if relative.is_nan() || relative > 1.0 {
+            return Approximate { value: Complex64::ZERO, error: f64::INFINITY };
         }
         if !(log.re.is_finite() && log.im.is_finite()) {
             return Approximate { value: Complex64::ZERO, error: 1e-300 };
