@@ -7,7 +7,8 @@ use gaussgap_simulation::work::Work;
 
 fn build(law: &LawSpec, n: u64) -> Box<dyn StandardizedSum> {
     let law = law.compile().expect("the law can be made ready");
-    sum::build(&SumSpec::like_summands(law, n), &Method::default(), &Work::new()).expect("the sum can be built")
+    sum::build(&SumSpec::like_summands(law, n), &Method::default(), &Work::new())
+        .expect("the sum can be built")
 }
 
 /// P(S ≤ s) for the sum itself.
@@ -107,7 +108,12 @@ fn bernoulli_sums_have_the_known_distances() {
         };
         assert!((distance.value - truth).abs() < 1e-12, "{n}: {distance:?} {truth}");
     }
-    for (p, n, value, half) in [(0.5, 10, 0.12305, 5e-6), (0.5, 100, 0.03979, 5e-6), (0.1, 10, 0.2361, 5e-5), (0.1, 100, 0.08316, 5e-6)] {
+    for (p, n, value, half) in [
+        (0.5, 10, 0.12305, 5e-6),
+        (0.5, 100, 0.03979, 5e-6),
+        (0.1, 10, 0.2361, 5e-5),
+        (0.1, 100, 0.08316, 5e-6),
+    ] {
         let found = build(&LawSpec::Bernoulli { p }, n).kolmogorov().kolmogorov.value;
         assert!((found - value).abs() < 1.02 * half, "{p} {n}: {found}");
     }

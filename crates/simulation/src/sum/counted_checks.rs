@@ -425,3 +425,42 @@ fn transforms_agree_with_convolution_on_random_tables() {
     println!("{compared} compared; largest error in units of the stated one {closest:.2}");
     assert!(compared > 10_000);
 }
+
+#[test]
+fn short_series_agree_with_tables_at_large_counts() {
+    // The same law as a count (tables of masses) and as a lattice law (a short Fourier series at these n).
+    let two_points = table(&[0.0, 1.0], &[0.7, 0.3], 1.0);
+    let bernoulli = named(ClosedFamily::Binomial { trials: 1, p: 0.3 });
+    for n in [20_000_000u64, 1_000_000_000] {
+        let (sum, twin) = (lattice(&two_points, n), closed(&bernoulli, n));
+        assert!(sum.detail().contains("series"), "{}", sum.detail());
+        for i in -21..=21 {
+            let z = f64::from(i) + 0.013;
+            for (a, b) in
+                [(sum.at_or_below(z), twin.at_or_below(z)), (sum.at_or_above(z), twin.at_or_above(z))]
+            {
+                assert!((a.value - b.value).abs() <= a.error + b.error, "{n} {z}: {a:?} {b:?}");
+                assert!(a.error <= 1e-8 * a.value, "{n} {z}: {a:?}");
+            }
+        }
+        let (a, b) = (sum.kolmogorov(), twin.kolmogorov());
+        assert!((a.kolmogorov.value - b.kolmogorov.value).abs() <= a.kolmogorov.error + b.kolmogorov.error);
+        assert!(a.kolmogorov.error < 1e-11, "{a:?}");
+        // Every index near the winner, looked at one by one, is no better.
+        let span = sum.lattice_span().unwrap();
+        for i in -300..=300 {
+            let z = a.at_z + f64::from(i) * span;
+            let gap = (twin.at_or_below(z).value - normal::at_or_below(z)).abs();
+            assert!(gap <= a.kolmogorov.value + a.kolmogorov.error + 1e-13, "{i}");
+        }
+    }
+    // A wide table of a thousand values, a billion copies: no transform could be that long.
+    let values: Vec<f64> = (0..1000).map(f64::from).collect();
+    let weights: Vec<f64> = values.iter().map(|x| (-x / 90.0).exp() + 0.01).collect();
+    let sum = lattice(&table(&values, &weights, 1.0), 1_000_000_000);
+    let skewness = sum.moments().skewness.unwrap();
+    let span = sum.lattice_span().unwrap();
+    // Esseen: the leading term (|γ| + 3h)φ(0)/6 in standard units; the next one is of the order 1/n.
+    let leading = (skewness.abs() + 3.0 * span) * normal::density(0.0) / 6.0;
+    assert!((sum.kolmogorov().kolmogorov.value / leading - 1.0).abs() < 1e-3);
+}

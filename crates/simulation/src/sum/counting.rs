@@ -252,4 +252,10 @@ impl Cumulative for CountTable {
     fn range(&self) -> (i64, i64) {
         self.law.range()
     }
+
+    /// The masses are smooth where the ends of the range are far away, so that the skewness is small.
+    fn is_smooth(&self) -> bool {
+        let (center, sd) = (self.law.center().value(), self.law.sd());
+        center > 20.0 * sd && self.law.range().1 as f64 - center > 20.0 * sd
+    }
 }

@@ -152,7 +152,14 @@ impl Octaves {
         let table = self.octaves[index as usize].get_or_init(|| {
             let k = f64::from(index + self.lowest);
             let low = k * std::f64::consts::LN_2;
-            Interpolant::build(&|x: f64| f(x.exp()), low, low + std::f64::consts::LN_2, tolerance, floor(k.exp2()), OCTAVE_DEPTH)
+            Interpolant::build(
+                &|x: f64| f(x.exp()),
+                low,
+                low + std::f64::consts::LN_2,
+                tolerance,
+                floor(k.exp2()),
+                OCTAVE_DEPTH,
+            )
         });
         (table.evaluate(t.ln()), table.error)
     }

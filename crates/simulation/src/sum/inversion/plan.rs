@@ -106,10 +106,7 @@ fn cut_off(terms: &[ScaledTerm], degree: i64, wanted: &[f64]) -> Vec<Option<(f64
         rest += heights[k] * share;
         sums[k] = rest;
     }
-    wanted
-        .iter()
-        .map(|w| sums.iter().position(|s| s <= w).map(|k| (rungs[k], sums[k])))
-        .collect()
+    wanted.iter().map(|w| sums.iter().position(|s| s <= w).map(|k| (rungs[k], sums[k]))).collect()
 }
 
 /// Makes the plan, or says why there is none.

@@ -54,7 +54,8 @@ impl<'a> Ray<'a> {
         let beyond = if direction > 0.0 { density.above(from) } else { density.at_or_below(from) };
         let median = density.quantile(0.5);
         let by_median = (median - from).abs();
-        let by_hazard = if here > 0.0 && here.is_finite() && beyond > 0.0 { beyond / here } else { f64::INFINITY };
+        let by_hazard =
+            if here > 0.0 && here.is_finite() && beyond > 0.0 { beyond / here } else { f64::INFINITY };
         let mut scale = if by_median > 0.0 { by_median.min(by_hazard) } else { by_hazard };
         if !(scale > 0.0 && scale.is_finite()) {
             scale = (near - from).abs();
@@ -64,7 +65,8 @@ impl<'a> Ray<'a> {
 
     /// The largest angle this ray may be turned by, from the family.
     pub fn rotation(&self) -> f64 {
-        let allowed = if self.direction > 0.0 { self.density.rotation_up() } else { self.density.rotation_down() };
+        let allowed =
+            if self.direction > 0.0 { self.density.rotation_up() } else { self.density.rotation_down() };
         allowed.clamp(0.0, std::f64::consts::FRAC_PI_2)
     }
 

@@ -42,7 +42,12 @@ fn uniform_sums_are_irwin_hall() {
         let sum = build(uniform.clone(), n);
         let count = n as f64;
         let z = (x - 0.5 * count) / (count / 12.0).sqrt();
-        println!("n={n} {} err {:.1e} real {:.1e}", sum.detail(), sum.at_or_below(z).error, (sum.at_or_below(z).value-reference).abs());
+        println!(
+            "n={n} {} err {:.1e} real {:.1e}",
+            sum.detail(),
+            sum.at_or_below(z).error,
+            (sum.at_or_below(z).value - reference).abs()
+        );
         check(&format!("Irwin–Hall {n} at {x}"), sum.at_or_below(z), reference);
     }
 }
@@ -60,6 +65,11 @@ fn exponential_sums_are_gamma() {
             worst = worst.max((sum.at_or_below(z).value - reference).abs());
             check(&format!("gamma {n} at {z}"), sum.at_or_below(z), reference);
         }
-        println!("n={n} {took:?} {} err {:.1e} worst {worst:.1e} D {:?}", sum.detail(), sum.at_or_below(0.0).error, sum.kolmogorov());
+        println!(
+            "n={n} {took:?} {} err {:.1e} worst {worst:.1e} D {:?}",
+            sum.detail(),
+            sum.at_or_below(0.0).error,
+            sum.kolmogorov()
+        );
     }
 }

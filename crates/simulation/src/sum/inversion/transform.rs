@@ -106,7 +106,8 @@ impl SummandTransform {
         let standard = Standard { mean, sd };
         let atoms: Vec<(f64, f64)> = law.atoms.iter().map(|a| ((a.value - mean) / sd, a.mass)).collect();
         let atom_mass: f64 = atoms.iter().map(|a| a.1).sum();
-        let pieces: Vec<PieceTransform> = law.pieces.iter().map(|p| PieceTransform::new(p, standard)).collect();
+        let pieces: Vec<PieceTransform> =
+            law.pieces.iter().map(|p| PieceTransform::new(p, standard)).collect();
         let (mut mass, mut continuous_mean, mut second, mut rule_error) = (0.0, 0.0, 0.0, 0.0);
         let mut heavy = false;
         for stretch in pieces.iter().flat_map(|p| &p.stretches) {
@@ -124,7 +125,8 @@ impl SummandTransform {
         }
         second += atoms.iter().map(|(x, p)| p * x * x).sum::<f64>();
         let spread = if heavy { (second - 1.0).max(0.0) } else { (second - 1.0).abs() };
-        let quadrature_error = rule_error + spread + (mass + atom_mass - 1.0).abs() + law.missing_mass + 2e-16;
+        let quadrature_error =
+            rule_error + spread + (mass + atom_mass - 1.0).abs() + law.missing_mass + 2e-16;
         Ok(Self {
             law: law.clone(),
             standard,
@@ -168,7 +170,8 @@ impl SummandTransform {
         if low < 1.0 {
             let (low, high) = (low.max(1e-18), high.min(0.999));
             if !self.pieces.is_empty() {
-                self.continuous_table.prepare(&|t| self.compensated_continuous(t), low, high, 2e-15, &|_| 0.0);
+                self.continuous_table
+                    .prepare(&|t| self.compensated_continuous(t), low, high, 2e-15, &|_| 0.0);
             }
             if self.atoms.len() > DIRECT_ATOMS {
                 self.atoms_table.prepare(&|t| self.compensated_atoms(t), low, high, 2e-15, &|_| 0.0);
@@ -350,7 +353,8 @@ impl PieceTransform {
         let mut sum = Complex64::ZERO;
         let mut error = 0.0;
         for (k, outer) in &end.parts {
-            let value = if *outer { self.stretches[*k].from_end(t) } else { self.stretches[*k].from_start(t) };
+            let value =
+                if *outer { self.stretches[*k].from_end(t) } else { self.stretches[*k].from_start(t) };
             sum += if *outer { -value.value } else { value.value };
             error += value.error;
         }
@@ -425,7 +429,8 @@ impl PieceTransform {
         }
         let mut sum = 0.0;
         for end in &self.ends {
-            let (value, error) = end.table.evaluate(&|t| self.from_point(end, t), t, 1e-15, |t| self.floor(end, t));
+            let (value, error) =
+                end.table.evaluate(&|t| self.from_point(end, t), t, 1e-15, |t| self.floor(end, t));
             sum += 1.001 * value.norm() + error;
         }
         if !self.dense.is_empty() {

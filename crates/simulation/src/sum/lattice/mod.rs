@@ -2,6 +2,7 @@
 
 mod commensurable;
 mod convolution;
+mod harmonics;
 mod power;
 mod summand;
 mod tail;
@@ -11,8 +12,9 @@ use super::{Distance, Method, Route, StandardizedSum, SumError, SumMoments, SumS
 use crate::figure::Figure;
 use crate::work::Work;
 use commensurable::common_lattice;
+use harmonics::{Harmonics, Sums, band};
 use summand::{Part, center, range, window};
-use tail::Tail;
+use tail::{SERIES_FROM, Tail};
 
 /// Longest transform: two tables and two buffers of this length stay below 150 MB.
 const LONGEST: usize = 1 << 22;
@@ -32,14 +34,53 @@ pub struct LatticeSum {
     steps: Steps<Transformed>,
 }
 
+/// Cumulative probabilities around the centre.
+#[derive(Debug)]
+enum Bulk {
+    /// One by one.
+    Table(CumulativeTable),
+    /// From a short series: its value at an index is the probability up to there.
+    Series(Harmonics),
+}
+
+impl Bulk {
+    fn at_or_below(&self, k: i64) -> f64 {
+        match self {
+            Self::Table(table) => table.at_or_below(k),
+            Self::Series(series) => series.at(k, Sums::Running).clamp(0.0, 1.0),
+        }
+    }
+
+    fn at_or_above(&self, k: i64) -> f64 {
+        match self {
+            Self::Table(table) => table.at_or_above(k),
+            Self::Series(_) => 1.0 - self.at_or_below(k - 1),
+        }
+    }
+
+    /// The smallest index from `first` to `last` at which `holds`, which is false before it and true after.
+    fn first_where(first: i64, last: i64, holds: impl Fn(i64) -> bool) -> i64 {
+        let (mut low, mut high) = (first - 1, last + 1);
+        while high - low > 1 {
+            let middle = low + (high - low) / 2;
+            if holds(middle) {
+                high = middle;
+            } else {
+                low = middle;
+            }
+        }
+        high
+    }
+}
+
 /// Cumulative probabilities: a table around the centre, tilted regions in the tails.
 #[derive(Debug)]
 struct Transformed {
     parts: Vec<Part>,
-    table: CumulativeTable,
-    /// Absolute error of the table.
+    bulk: Bulk,
+    /// Absolute error of the bulk.
     absolute: f64,
-    /// Relative error of the table.
+    /// Relative error of the bulk.
     relative: f64,
     range: (i64, i64),
     /// Lower and upper tail; `None` where the table itself has relative accuracy everywhere.
@@ -101,7 +142,7 @@ impl LatticeSum {
             let how = format!("{} values convolved directly", masses.len());
             let direct = Transformed {
                 parts,
-                table,
+                bulk: Bulk::Table(table),
                 absolute: 0.0,
                 relative,
                 range: whole,
@@ -112,21 +153,27 @@ impl LatticeSum {
         } else {
             let (first, last) = window(&parts, OUTSIDE, sd);
             let size = (last - first) as f64 + 1.0;
-            if size > LONGEST as f64 {
+            let outside = 2.0 * (-OUTSIDE).exp();
+            let narrow = if last - first >= SERIES_FROM { band(&parts, sd) } else { None };
+            let (bulk, absolute, how) = if let Some(narrow) = narrow {
+                let series = Harmonics::new(&parts, first, last - first + 1, outside, narrow, Sums::Running);
+                let absolute = series.error;
+                (Bulk::Series(series), absolute, "Fourier series of a narrow band".to_owned())
+            } else if size > LONGEST as f64 {
                 return Err(unavailable(format!("a transform of {size:.0} lattice points is too long")));
-            }
-            let length = power::transform_length(size as usize);
-            let found = power::masses(&parts, first, length, 2.0 * (-OUTSIDE).exp(), 0.0, work)?;
-            let table = CumulativeTable::new(first, &found.values);
-            let reaching = |values: &[f64]| values.partition_point(|&value| value < PLAIN_FROM) as i64;
-            let low = first + reaching(&table.lower) - 1;
-            let high = first + table.upper.partition_point(|&value| value >= PLAIN_FROM) as i64;
+            } else {
+                let length = power::transform_length(size as usize);
+                let found = power::masses(&parts, first, length, outside, 0.0, work)?;
+                let table = CumulativeTable::new(first, &found.values);
+                (Bulk::Table(table), found.run_error, format!("real transform of length {length}"))
+            };
+            let low = Bulk::first_where(first, last, |k| bulk.at_or_below(k) >= PLAIN_FROM) - 1;
+            let high = Bulk::first_where(first, last, |k| bulk.at_or_above(k) < PLAIN_FROM);
             let tails = (Tail::new(&parts, false, low, sd), Tail::new(&parts, true, high, sd));
-            let how = format!("real transform of length {length}");
             let transformed = Transformed {
                 parts,
-                table,
-                absolute: found.run_error,
+                bulk,
+                absolute,
                 relative: 4.0 * f64::EPSILON,
                 range: whole,
                 tails: Some(tails),
@@ -161,19 +208,23 @@ impl Cumulative for Transformed {
     fn at_or_below(&self, k: i64) -> Figure {
         match &self.tails {
             Some((lower, _)) if lower.contains(k) => self.tail(lower, k),
-            _ => self.plain(self.table.at_or_below(k)),
+            _ => self.plain(self.bulk.at_or_below(k)),
         }
     }
 
     fn at_or_above(&self, k: i64) -> Figure {
         match &self.tails {
             Some((_, upper)) if upper.contains(k) => self.tail(upper, k),
-            _ => self.plain(self.table.at_or_above(k)),
+            _ => self.plain(self.bulk.at_or_above(k)),
         }
     }
 
     fn range(&self) -> (i64, i64) {
         self.range
+    }
+
+    fn is_smooth(&self) -> bool {
+        matches!(self.bulk, Bulk::Series(_))
     }
 }
 

@@ -161,18 +161,10 @@ pub(crate) fn masses(
         let mut error = relative[j] + U * (24.0 + 2.0 * logarithm.abs());
         if refinements > 0 {
             refinements -= 1;
-            let (mut log_sum, mut angle_sum, mut units) = (0.0, 0.0, 24.0);
-            for part in parts {
-                let (log, argument, each) = log_characteristic(part, t);
-                log_sum += part.count * log;
-                angle_sum += reduced(part.count, argument);
-                units += part.count * (each + 4.0 * (log.abs() + argument.abs()));
-            }
+            let refined = frequency(parts, from_first, j as f64, length as f64);
+            let units = refined.units;
             if U * units < error {
-                let turned = fraction(from_first.times(j as f64).times(scale));
-                logarithm = log_sum;
-                // The transform has e^(−itk): the conjugate.
-                angle = -angle_sum - TAU * turned;
+                (logarithm, angle) = (refined.logarithm, refined.angle);
                 error = U * units;
                 overtaken = 0;
             } else {
@@ -202,6 +194,48 @@ pub(crate) fn masses(
         + norm_error / (-libm::expm1(-2.0 * damping)).max(scale).sqrt()
         + 2.0 * dropped;
     Ok(Masses { values: masses, run_error, damped_error: damped_error.min(run_error * 2.0) })
+}
+
+/// The transform of a sum at one frequency of a cycle, and by how many units in the last place it may be off.
+pub(crate) struct Frequency {
+    /// The logarithm of its modulus.
+    pub logarithm: f64,
+    /// Its argument, about the start of the cycle.
+    pub angle: f64,
+    /// Relative error in units of 2⁻⁵³.
+    pub units: f64,
+}
+
+/// Frequency j of the cycle of `length` indices that begins `from_first` below the mean, from the summands
+/// directly.
+pub(crate) fn frequency(parts: &[Part], from_first: Twofold, j: f64, length: f64) -> Frequency {
+    let t = TAU * j / length;
+    let (mut logarithm, mut angle, mut units) = (0.0, 0.0, 24.0);
+    for part in parts {
+        let (log, argument, each) = log_characteristic(part, t);
+        logarithm += part.count * log;
+        angle += reduced(part.count, argument);
+        units += part.count * (each + 4.0 * (log.abs() + argument.abs()));
+    }
+    // The transform has e^(−itk): the conjugate, turned by the distance from the start to the mean.
+    let turned = fraction(from_first.times(j).over(length));
+    Frequency { logarithm, angle: -angle - TAU * turned, units }
+}
+
+/// |φ| of one copy at 0, 2π/length, …, π.
+pub(crate) fn moduli(part: &Part, length: usize) -> Vec<f64> {
+    let forward = {
+        let mut planner = PLANS.lock().unwrap_or_else(|poisoned| poisoned.into_inner());
+        planner.plan_fft_forward(length)
+    };
+    let mut masses = vec![0.0; length];
+    for (&offset, &mass) in part.offsets.iter().zip(&part.masses) {
+        masses[offset.rem_euclid(length as i64) as usize] += mass;
+    }
+    let mut spectrum = vec![Complex64::default(); length / 2 + 1];
+    // The lengths are the planned ones, so the transform cannot fail.
+    let _ = forward.process(&mut masses, &mut spectrum);
+    spectrum.iter().map(|value| value.norm()).collect()
 }
 
 /// |1 − e^(−τ+it)| from sin(t/2): √((1 − e^−τ)² + 4e^−τ sin²(t/2)).

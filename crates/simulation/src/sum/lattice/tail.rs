@@ -4,6 +4,7 @@
 //! tilted sum is centred near k makes P_θ(S = k) large compared with the rounding of its transform (Wilson and
 //! Keich 2016; Grübel and Hermesmeier 1999).
 
+use super::harmonics::{Harmonics, Sums, band};
 use super::power::{masses, transform_length};
 use super::summand::{Part, center, range, tilt_for, window};
 use crate::figure::Figure;
@@ -19,8 +20,23 @@ struct Region {
     near: i64,
     far: i64,
     theta: f64,
-    /// Probability of the tail beginning at the index `near` ± i.
-    tails: Vec<Figure>,
+    tails: Tails,
+}
+
+/// The probabilities of a region.
+#[derive(Debug)]
+enum Tails {
+    /// Of the tail beginning at the index `near` ± i.
+    Listed(Vec<Figure>),
+    /// From a short series, where the list would be long.
+    Series {
+        /// Of the damped sums of the tilted masses.
+        series: Harmonics,
+        /// Which these are.
+        sums: Sums,
+        /// ln M(θ)ⁿ.
+        logarithm: f64,
+    },
 }
 
 /// One tail, in regions that are computed when first asked for, always in the same order.
@@ -39,6 +55,9 @@ pub(crate) struct Tail {
 
 /// Mass left outside the window of a tilted sum on each side: e^−46 ≈ 1e-20.
 const OUTSIDE: f64 = 46.0;
+
+/// Windows from this length on are tried by a short series first.
+pub(crate) const SERIES_FROM: i64 = 1 << 14;
 
 /// Relative accuracy of the tails of a region.
 const SHARP: f64 = 1e-9;
@@ -78,31 +97,54 @@ impl Tail {
                 if !beyond(k, region.far) {
                     break;
                 }
-                if let Some(last) = region.tails.last()
-                    && last.value < 1e-300
-                {
+                let last = self.read(parts, region, region.far);
+                if last.value < 1e-300 {
                     return Figure::bound(0.0, last.value + last.error);
                 }
             }
             let start = regions.last().map_or(self.sign * 4.0 / self.sd, |region| region.theta);
-            let mut region = self.region(parts, near, start, HALF_WIDTH);
-            // A lumpy law may have little mass where the tilt for further out puts it: tilt for here instead.
-            if region.tails.first().is_some_and(|first| !is_sharp(first)) {
-                let closer = self.region(parts, near, start, 0.0);
-                if closer.tails[0].error < region.tails[0].error {
-                    region = closer;
-                }
-            }
-            // The region ends where its relative accuracy does; the next one begins there.
-            let sharp = region.tails.iter().skip(1).take_while(|tail| is_sharp(tail)).count() + 1;
-            region.tails.truncate(sharp);
-            region.far = near + self.sign as i64 * (sharp as i64 - 1);
-            regions.push(Arc::new(region));
+            regions.push(Arc::new(self.sharp_region(parts, near, start)));
         }
-        let found = regions.iter().rev().find(|region| !beyond(region.near, k));
-        found
-            .and_then(|region| region.tails.get((k - region.near).unsigned_abs() as usize).copied())
-            .unwrap_or(Figure::bound(0.0, f64::MIN_POSITIVE))
+        let found = regions.iter().rev().find(|region| !beyond(region.near, k)).cloned();
+        drop(regions);
+        found.map_or(Figure::bound(0.0, f64::MIN_POSITIVE), |region| self.read(parts, &region, k))
+    }
+
+    /// The probability of the tail beginning at k, from the region k lies in.
+    fn read(&self, parts: &[Part], region: &Region, k: i64) -> Figure {
+        match &region.tails {
+            Tails::Listed(tails) => {
+                let i = (k - region.near).unsigned_abs() as usize;
+                tails.get(i).copied().unwrap_or(Figure::bound(0.0, f64::MIN_POSITIVE))
+            }
+            Tails::Series { series, sums, logarithm } => {
+                let sum = series.at(k, *sums).max(0.0);
+                let turned = region.theta * center(parts).distance_to(k as f64);
+                let factor = (logarithm - turned).exp();
+                let relative = U * (32.0 + 8.0 * (logarithm.abs() + turned.abs()));
+                let error = factor * (series.error + relative * sum) + f64::MIN_POSITIVE;
+                Figure::bound((factor * sum).min(1.0), error)
+            }
+        }
+    }
+
+    /// The region beginning at `near`, cut where its relative accuracy ends; the next one begins there.
+    fn sharp_region(&self, parts: &[Part], near: i64, start: f64) -> Region {
+        let first_of = |region: &Region| self.read(parts, region, region.near);
+        let mut region = self.region(parts, near, start, HALF_WIDTH);
+        // A lumpy law may have little mass where the tilt for further out puts it: tilt for here instead.
+        if !is_sharp(&first_of(&region)) {
+            let closer = self.region(parts, near, start, 0.0);
+            if first_of(&closer).error < first_of(&region).error {
+                region = closer;
+            }
+        }
+        if let Tails::Listed(tails) = &mut region.tails {
+            let sharp = tails.iter().skip(1).take_while(|tail| is_sharp(tail)).count() + 1;
+            tails.truncate(sharp);
+            region.far = near + self.sign as i64 * (sharp as i64 - 1);
+        }
+        region
     }
 
     /// Computes the region beginning at `near`.
@@ -133,11 +175,30 @@ impl Tail {
         let tilted: Vec<Part> = parts.iter().map(|part| part.tilted(theta)).collect();
         let (first, last) = window(&tilted, OUTSIDE, tilted_sd.max(0.1));
         let (first, last) = (first.min(near), last.max(near));
-        let size = transform_length((last - first + 1) as usize);
         let damping = theta.abs();
+        let far = near + self.sign as i64 * (length as i64 - 1);
+        let outside = 2.0 * (-OUTSIDE).exp();
+        if last - first >= SERIES_FROM
+            && let Some(band) = band(&tilted, tilted_sd)
+        {
+            let rate = damping;
+            let sums = if self.sign > 0.0 { Sums::DampedUp { rate } } else { Sums::DampedDown { rate } };
+            // Twice the window: the next cycle's mass is a window's length away from the region.
+            let width = last - first + 1;
+            let start = if self.sign > 0.0 { first } else { first - width };
+            let wrapped = outside + (-rate * width as f64).exp();
+            let series = Harmonics::new(&tilted, start, 2 * width, wrapped, band, sums);
+            return Region {
+                near,
+                far,
+                theta,
+                tails: Tails::Series { series, sums, logarithm: cumulants.value },
+            };
+        }
+        let size = transform_length((last - first + 1) as usize);
         // Not cancelled half-way: a region is kept for everybody.
-        let Ok(found) = masses(&tilted, first, size, 2.0 * (-OUTSIDE).exp(), damping, &Work::new()) else {
-            return Region { near, far: near, theta, tails: vec![Figure::bound(0.0, 1.0)] };
+        let Ok(found) = masses(&tilted, first, size, outside, damping, &Work::new()) else {
+            return Region { near, far: near, theta, tails: Tails::Listed(vec![Figure::bound(0.0, 1.0)]) };
         };
         // T(k) = mass(k) + e^(−|θ|)·T(k ± 1), from the far end.
         let shrink = (-damping).exp();
@@ -166,6 +227,6 @@ impl Tail {
             }
             k -= self.sign as i64;
         }
-        Region { near, far: near + self.sign as i64 * (length as i64 - 1), theta, tails }
+        Region { near, far, theta, tails: Tails::Listed(tails) }
     }
 }
