@@ -139,7 +139,7 @@ impl PairSum {
         let tables: Vec<Interpolant> = intervals
             .par_iter()
             .map(|(a, b)| {
-                Interpolant::build(&|z| Complex64::new(result.integral(z, 24), 0.0), *a, *b, 1e-14, 1e-14, 44)
+                Interpolant::build(&|z| (Complex64::new(result.integral(z, 24), 0.0), 0.0), *a, *b, 1e-14, 1e-14, 44)
             })
             .collect();
         let mut disagreement: f64 = 0.0;

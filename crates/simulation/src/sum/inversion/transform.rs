@@ -11,9 +11,9 @@
 use super::ceiling::Ceiling;
 use super::chebyshev::Octaves;
 use super::stretch::{Standard, Stretch, compensated_kernel};
+use super::tails::Tails;
 use crate::law::{Density, Law};
 use num_complex::Complex64;
-use std::sync::atomic::{AtomicU64, Ordering};
 use std::sync::{Arc, OnceLock};
 
 /// Above this many atoms their compensated transform is interpolated too.
@@ -33,20 +33,6 @@ pub(super) struct SplitValue {
     pub(super) error: f64,
 }
 
-/// A largest value met so far, shared between threads; never negative.
-#[derive(Debug, Default)]
-struct Largest(AtomicU64);
-
-impl Largest {
-    fn meet(&self, value: f64) {
-        let value = if value.is_finite() { value.abs() } else { f64::MAX };
-        self.0.fetch_max(value.to_bits(), Ordering::Relaxed);
-    }
-    fn get(&self) -> f64 {
-        f64::from_bits(self.0.load(Ordering::Relaxed))
-    }
-}
-
 /// A point where stretches begin or end, with everything that leaves from it.
 #[derive(Debug)]
 struct EndPoint {
@@ -54,13 +40,12 @@ struct EndPoint {
     /// Index of the stretch and whether the point is its outer end (which enters with a minus sign).
     parts: Vec<(usize, bool)>,
     table: Octaves,
-    error: Largest,
 }
 
 #[derive(Debug)]
 struct PieceTransform {
     stretches: Vec<Stretch>,
-    /// Set where the whole piece has a closed transform: factor, density, add, multiply (standardized).
+    /// Set where the piece is a whole unbounded family with a closed transform: factor, density, add, multiply (standardized).
     closed: Option<(f64, Arc<dyn Density>, f64, f64)>,
     ends: Vec<EndPoint>,
     /// For pieces whose rays may not be turned: nodes and weights, per octave of t from 1 on.
@@ -86,9 +71,8 @@ pub(super) struct SummandTransform {
     pieces: Vec<PieceTransform>,
     continuous_table: Octaves,
     atoms_table: Octaves,
-    /// Largest error of ψ/t² met while filling the tables.
-    met: Largest,
     ceiling: OnceLock<Ceiling>,
+    tails: OnceLock<Tails>,
     /// Error of ψ relative to t², from the quadrature rules and the moments.
     quadrature_error: f64,
 }
@@ -135,13 +119,13 @@ impl SummandTransform {
             pieces,
             continuous_table: Octaves::new(-64, -1),
             atoms_table: Octaves::new(-64, -1),
-            met: Largest::default(),
             ceiling: OnceLock::new(),
+            tails: OnceLock::new(),
             quadrature_error,
         })
     }
 
-    fn compensated_continuous(&self, t: f64) -> Complex64 {
+    fn compensated_continuous(&self, t: f64) -> (Complex64, f64) {
         let mut sum = Complex64::ZERO;
         let mut error = 0.0;
         for stretch in self.pieces.iter().flat_map(|p| &p.stretches) {
@@ -149,18 +133,18 @@ impl SummandTransform {
             sum += value;
             error += stretch_error;
         }
-        self.met.meet(error / (t * t));
-        sum / (t * t)
+        (sum / (t * t), error / (t * t))
     }
 
-    fn compensated_atoms(&self, t: f64) -> Complex64 {
+    fn compensated_atoms(&self, t: f64) -> (Complex64, f64) {
         let (mut real, mut imaginary) = (0.0, 0.0);
         for (x, p) in &self.atoms {
             let (re, im) = compensated_kernel(t * x);
             real += p * re;
             imaginary += p * im;
         }
-        Complex64::new(real, imaginary) / (t * t)
+        let value = Complex64::new(real, imaginary) / (t * t);
+        (value, 4e-16 * value.norm())
     }
 
     /// Fills the tables between two frequencies, on all threads.
@@ -168,10 +152,10 @@ impl SummandTransform {
         if low < 1.0 {
             let (low, high) = (low.max(1e-18), high.min(0.999));
             if !self.pieces.is_empty() {
-                self.continuous_table.prepare(&|t| self.compensated_continuous(t), low, high, 2e-15, &|_| 0.0);
+                self.continuous_table.prepare(&|t| self.compensated_continuous(t), low, high, 2e-15);
             }
             if self.atoms.len() > DIRECT_ATOMS {
-                self.atoms_table.prepare(&|t| self.compensated_atoms(t), low, high, 2e-15, &|_| 0.0);
+                self.atoms_table.prepare(&|t| self.compensated_atoms(t), low, high, 2e-15);
             }
         }
         if high > 1.0 {
@@ -186,14 +170,14 @@ impl SummandTransform {
         let (continuous, mut error) = if self.pieces.is_empty() {
             (Complex64::ZERO, 0.0)
         } else {
-            self.continuous_table.evaluate(&|t| self.compensated_continuous(t), t, 2e-15, |_| 0.0)
+            self.continuous_table.evaluate(&|t| self.compensated_continuous(t), t, 2e-15)
         };
         let atoms = if self.atoms.len() > DIRECT_ATOMS {
-            let (value, more) = self.atoms_table.evaluate(&|t| self.compensated_atoms(t), t, 2e-15, |_| 0.0);
+            let (value, more) = self.atoms_table.evaluate(&|t| self.compensated_atoms(t), t, 2e-15);
             error += more;
             value
         } else {
-            self.compensated_atoms(t)
+            self.compensated_atoms(t).0
         };
         (continuous, atoms, error)
     }
@@ -204,7 +188,7 @@ impl SummandTransform {
     pub(super) fn cumulant(&self, t: f64) -> Option<(Complex64, f64)> {
         let (continuous, atoms, interpolation) = self.compensated(t);
         let psi = (continuous + atoms) * (t * t);
-        let relative = interpolation + self.quadrature_error + self.met.get() + 1e-15;
+        let relative = interpolation + self.quadrature_error + 1e-15;
         let squared = 2.0 * psi.re + psi.norm_sqr();
         if squared < -0.99 {
             return None;
@@ -219,7 +203,7 @@ impl SummandTransform {
             let (continuous, atoms, interpolation) = self.compensated(t);
             let (mass, mean) = (self.continuous_mass, self.continuous_mean);
             let square = t * t;
-            let relative = interpolation + self.quadrature_error + self.met.get() + 1e-15;
+            let relative = interpolation + self.quadrature_error + 1e-15;
             return SplitValue {
                 atoms: if self.atoms.len() > DIRECT_ATOMS {
                     Complex64::new(self.atom_mass, t * mean) + atoms * square
@@ -264,6 +248,11 @@ impl SummandTransform {
         self.ceiling.get_or_init(|| Ceiling::new(self))
     }
 
+    /// Bounds on the tails.
+    pub(super) fn tails(&self) -> &Tails {
+        self.tails.get_or_init(|| Tails::new(&self.law, self.standard.mean, self.standard.sd))
+    }
+
     /// Standardized points where the density or a derivative of it jumps.
     pub(super) fn corners(&self) -> Vec<f64> {
         let mut corners: Vec<f64> = self
@@ -291,14 +280,6 @@ impl SummandTransform {
         edges
     }
 
-    /// Nodes and probabilities of all panels.
-    pub(super) fn nodes(&self) -> impl Iterator<Item = (f64, f64)> + '_ {
-        self.pieces
-            .iter()
-            .flat_map(|p| &p.stretches)
-            .flat_map(|s| &s.panels)
-            .flat_map(|p| p.nodes.iter().copied().zip(p.weights.iter().copied()))
-    }
 }
 
 impl PieceTransform {
@@ -308,7 +289,9 @@ impl PieceTransform {
         let multiply = piece.multiply / standard.sd;
         let (low, high) = piece.density.support();
         let whole = piece.low <= low && piece.high >= high;
-        let closed = (whole && piece.density.log_laplace(Complex64::new(0.0, multiply)).is_some())
+        // The closed transforms of one- and two-sided infinite families fall with t; those of bounded ones swing.
+        let unbounded = low.is_infinite() || high.is_infinite();
+        let closed = (whole && unbounded && piece.density.log_laplace(Complex64::new(0.0, multiply)).is_some())
             .then(|| (piece.factor, Arc::clone(&piece.density), add, multiply));
         let mut ends: Vec<EndPoint> = Vec::new();
         let mut dense = Vec::new();
@@ -324,7 +307,6 @@ impl PieceTransform {
                                 position,
                                 parts: vec![(k, outer)],
                                 table: Octaves::new(0, 50),
-                                error: Largest::default(),
                             }),
                         }
                     }
@@ -341,12 +323,12 @@ impl PieceTransform {
 
     fn prepare(&self, low: f64, high: f64) {
         for end in &self.ends {
-            end.table.prepare(&|t| self.from_point(end, t), low, high, 1e-15, &|t| self.floor(end, t));
+            end.table.prepare(&|t| self.from_point(end, t), low, high, 1e-15);
         }
     }
 
     /// Everything that leaves from one point, its own oscillation e^{−it·position} taken out.
-    fn from_point(&self, end: &EndPoint, t: f64) -> Complex64 {
+    fn from_point(&self, end: &EndPoint, t: f64) -> (Complex64, f64) {
         let mut sum = Complex64::ZERO;
         let mut error = 0.0;
         for (k, outer) in &end.parts {
@@ -354,18 +336,7 @@ impl PieceTransform {
             sum += if *outer { -value.value } else { value.value };
             error += value.error;
         }
-        end.error.meet(error);
-        sum
-    }
-
-    /// Below this the sum of what leaves from a point is rounding.
-    fn floor(&self, end: &EndPoint, t: f64) -> f64 {
-        if end.parts.len() < 2 {
-            return 0.0;
-        }
-        let (k, outer) = end.parts[0];
-        let value = if outer { self.stretches[k].from_end(t) } else { self.stretches[k].from_start(t) };
-        1e-15 * value.value.norm()
+        (sum, error)
     }
 
     fn dense_nodes(&self, t: f64) -> Option<&[(f64, f64)]> {
@@ -396,10 +367,10 @@ impl PieceTransform {
         let mut error = 0.0;
         for end in &self.ends {
             let (value, interpolation) =
-                end.table.evaluate(&|t| self.from_point(end, t), t, 1e-15, |t| self.floor(end, t));
+                end.table.evaluate(&|t| self.from_point(end, t), t, 1e-15);
             let (sine, cosine) = (t * end.position).sin_cos();
             sum += value * Complex64::new(cosine, -sine);
-            error += interpolation + end.error.get();
+            error += interpolation;
         }
         if !self.dense.is_empty() {
             match self.dense_nodes(t) {
@@ -425,7 +396,7 @@ impl PieceTransform {
         }
         let mut sum = 0.0;
         for end in &self.ends {
-            let (value, error) = end.table.evaluate(&|t| self.from_point(end, t), t, 1e-15, |t| self.floor(end, t));
+            let (value, error) = end.table.evaluate(&|t| self.from_point(end, t), t, 1e-15);
             sum += 1.001 * value.norm() + error;
         }
         if !self.dense.is_empty() {
