@@ -135,9 +135,11 @@ impl PointMasses {
             }
         }
         if result.points.len() > 64 {
-            let floor = 1e-16 / result.points.len() as f64 * result.masses.iter().sum::<f64>().min(1.0) * 1e-3;
+            let floor =
+                1e-16 / result.points.len() as f64 * result.masses.iter().sum::<f64>().min(1.0) * 1e-3;
             let keep: Vec<bool> = result.masses.iter().map(|m| *m > floor).collect();
-            result.left_out += result.masses.iter().zip(&keep).filter(|(_, k)| !**k).map(|(m, _)| m).sum::<f64>();
+            result.left_out +=
+                result.masses.iter().zip(&keep).filter(|(_, k)| !**k).map(|(m, _)| m).sum::<f64>();
             let mut kept = keep.iter();
             result.points.retain(|_| kept.next().copied().unwrap_or(true));
             let mut kept = keep.iter();

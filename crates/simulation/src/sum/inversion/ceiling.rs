@@ -66,7 +66,8 @@ impl Ceiling {
             let smallest = deficits[k].min(deficits[k + 1]) - 2.0 * excess - excess * excess;
             let bound = if smallest > 0.0 { 0.5 * (-smallest).ln_1p() } else { 0.0 };
             log_whole[k] = bound.max(log_whole[k + 1]);
-            continuous[k] = (parts[k].max(parts[k + 1]) + excess).min(summand.continuous_mass).max(continuous[k + 1]);
+            continuous[k] =
+                (parts[k].max(parts[k + 1]) + excess).min(summand.continuous_mass).max(continuous[k + 1]);
             if rungs[k] >= 1.0 {
                 let far = summand.envelope(rungs[k]);
                 continuous[k] = continuous[k].min(far.max(continuous[k + 1]));

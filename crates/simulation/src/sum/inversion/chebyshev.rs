@@ -58,15 +58,7 @@ impl Interpolant {
         result
     }
 
-    fn extend(
-        &mut self,
-        f: &Function,
-        low: f64,
-        high: f64,
-        tolerance: f64,
-        floor: f64,
-        halvings: u32,
-    ) {
+    fn extend(&mut self, f: &Function, low: f64, high: f64, tolerance: f64, floor: f64, halvings: u32) {
         let (middle, half) = (0.5 * (low + high), 0.5 * (high - low));
         let evaluated: Vec<(Complex64, f64)> = (0..NODES)
             .map(|j| f(middle + half * (std::f64::consts::PI * (j as f64 + 0.5) / NODES as f64).cos()))
@@ -131,13 +123,7 @@ impl Octaves {
 
     /// Fills the octaves that meet [low, high], side by side. Filling one octave runs on one thread only, so
     /// that a thread which waits for it never has to help with it.
-    pub(super) fn prepare(
-        &self,
-        f: &Function,
-        low: f64,
-        high: f64,
-        tolerance: f64,
-    ) {
+    pub(super) fn prepare(&self, f: &Function, low: f64, high: f64, tolerance: f64) {
         let (first, last) = (low.log2().floor() as i32, high.log2().floor() as i32);
         (first..=last).into_par_iter().for_each(|k| {
             self.evaluate(f, f64::from(k).exp2() * 1.5, tolerance);
@@ -145,17 +131,19 @@ impl Octaves {
     }
 
     /// The value at t and the error of its octave; f is called where the octave is new.
-    pub(super) fn evaluate(
-        &self,
-        f: &Function,
-        t: f64,
-        tolerance: f64,
-    ) -> (Complex64, f64) {
+    pub(super) fn evaluate(&self, f: &Function, t: f64, tolerance: f64) -> (Complex64, f64) {
         let index = (t.log2().floor() as i32 - self.lowest).clamp(0, self.octaves.len() as i32 - 1);
         let table = self.octaves[index as usize].get_or_init(|| {
             let k = f64::from(index + self.lowest);
             let low = k * std::f64::consts::LN_2;
-            Interpolant::build(&|x: f64| f(x.exp()), low, low + std::f64::consts::LN_2, tolerance, 0.0, OCTAVE_DEPTH)
+            Interpolant::build(
+                &|x: f64| f(x.exp()),
+                low,
+                low + std::f64::consts::LN_2,
+                tolerance,
+                0.0,
+                OCTAVE_DEPTH,
+            )
         });
         (table.evaluate(t.ln()), table.error)
     }

@@ -14,7 +14,7 @@ use std::sync::Arc;
 use std::sync::atomic::{AtomicUsize, Ordering};
 
 /// Most evaluations of a density for one table.
-const BUDGET: usize = 20_000_000;
+const BUDGET: usize = 4_000_000;
 
 /// The continuous part of one summand, times a scale.
 #[derive(Debug, Clone)]
@@ -115,17 +115,8 @@ impl PairSum {
         corners.sort_by(f64::total_cmp);
         corners.dedup_by(|a, b| (*a - *b).abs() <= 1e-13 * (1.0 + a.abs()));
         let (first_edges, second_edges) = (first.edges(), second.edges());
-        let mut result = Self {
-            first,
-            second,
-            first_edges,
-            second_edges,
-            low,
-            high,
-            table: None,
-            error: 0.0,
-            corners,
-        };
+        let mut result =
+            Self { first, second, first_edges, second_edges, low, high, table: None, error: 0.0, corners };
         let mut cuts = vec![low];
         cuts.extend(result.corners.iter().copied().filter(|c| *c > low && *c < high));
         cuts.push(high);
@@ -168,7 +159,9 @@ impl PairSum {
     }
 
     fn integral(&self, z: f64, order: usize) -> f64 {
-        let (Some(&low), Some(&high)) = (self.first_edges.first(), self.first_edges.last()) else { return 0.0 };
+        let (Some(&low), Some(&high)) = (self.first_edges.first(), self.first_edges.last()) else {
+            return 0.0;
+        };
         let mut cuts = self.first_edges.clone();
         cuts.extend(self.second_edges.iter().map(|e| z - e).filter(|c| *c > low && *c < high));
         cuts.sort_by(f64::total_cmp);
@@ -216,5 +209,9 @@ fn rule(order: usize) -> &'static [(f64, f64)] {
     use std::sync::OnceLock;
     static FINE: OnceLock<Vec<(f64, f64)>> = OnceLock::new();
     static COARSE: OnceLock<Vec<(f64, f64)>> = OnceLock::new();
-    if order >= 24 { FINE.get_or_init(|| gauss_legendre(24)) } else { COARSE.get_or_init(|| gauss_legendre(18)) }
+    if order >= 24 {
+        FINE.get_or_init(|| gauss_legendre(24))
+    } else {
+        COARSE.get_or_init(|| gauss_legendre(18))
+    }
 }

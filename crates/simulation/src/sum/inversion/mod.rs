@@ -83,7 +83,8 @@ impl InversionSum {
         let mut error = plan.alias + plan.truncation + 2.2 * plan.dropped + 4e-16;
         let (steps, few) = real_space(&terms, &plan, &mut error, work)?;
         work.set_fraction(0.3);
-        let fourier = if plan.frequencies > 0 { Some(transform_part(&terms, &plan, &mut error, work)?) } else { None };
+        let fourier =
+            if plan.frequencies > 0 { Some(transform_part(&terms, &plan, &mut error, work)?) } else { None };
         if !(error <= LARGEST_ERROR) {
             return Err(refuse(format!("the error of the inversion could only be bounded by {error:.1e}")));
         }
@@ -184,8 +185,9 @@ fn scaled_terms(spec: &SumSpec) -> Result<(Vec<ScaledTerm>, SumMoments), SumErro
         let share = size / sd;
         let moments = &term.law.moments;
         let n = term.count as f64;
-        skewness =
-            skewness.zip(moments.skewness).map(|(sum, s)| sum + n * s * share.powi(3) * term.multiply.signum());
+        skewness = skewness
+            .zip(moments.skewness)
+            .map(|(sum, s)| sum + n * s * share.powi(3) * term.multiply.signum());
         kurtosis = kurtosis.zip(moments.excess_kurtosis).map(|(sum, k)| sum + n * k * share.powi(4));
         let summand = summands::prepared(&term.law).map_err(refuse)?;
         terms.push(ScaledTerm { summand, count: term.count, scale: share * term.multiply.signum() });
@@ -196,7 +198,12 @@ fn scaled_terms(spec: &SumSpec) -> Result<(Vec<ScaledTerm>, SumMoments), SumErro
 type RealSpace = (Option<Steps>, Vec<(PointMasses, Few)>);
 
 /// The selections that are added in real space.
-fn real_space(terms: &[ScaledTerm], plan: &Plan, error: &mut f64, work: &Work) -> Result<RealSpace, SumError> {
+fn real_space(
+    terms: &[ScaledTerm],
+    plan: &Plan,
+    error: &mut f64,
+    work: &Work,
+) -> Result<RealSpace, SumError> {
     let mut steps = None;
     let mut few = Vec::new();
     let mut pairs: Vec<((usize, usize), Arc<PairSum>)> = Vec::new();
@@ -210,14 +217,19 @@ fn real_space(terms: &[ScaledTerm], plan: &Plan, error: &mut f64, work: &Work) -
             }
             let sum = PointMasses::sum_of(&term.summand.atoms, term.count - k, term.scale);
             masses = sum.and_then(|s| masses.plus(&s)).ok_or_else(|| {
-                refuse("the sums of its atoms take too many different values to be kept apart from its density")
+                refuse(
+                    "the sums of its atoms take too many different values to be kept apart from its density",
+                )
             })?;
         }
         *error += 2.2 * masses.left_out + 1e-15 * masses.mass();
         match continuous[..] {
             [] => steps = Some(Steps::new(masses)),
             [i] => {
-                few.push((masses, Few::One(ContinuousPart::new(Arc::clone(&terms[i].summand), terms[i].scale))));
+                few.push((
+                    masses,
+                    Few::One(ContinuousPart::new(Arc::clone(&terms[i].summand), terms[i].scale)),
+                ));
             }
             [i, j] => {
                 let pair = match pairs.iter().find(|(key, _)| *key == (i, j)) {

@@ -106,10 +106,7 @@ fn cut_off(terms: &[ScaledTerm], degree: i64, wanted: &[f64]) -> Vec<Option<(f64
         rest += heights[k] * share;
         sums[k] = rest;
     }
-    wanted
-        .iter()
-        .map(|w| sums.iter().position(|s| s <= w).map(|k| (rungs[k], sums[k])))
-        .collect()
+    wanted.iter().map(|w| sums.iter().position(|s| s <= w).map(|k| (rungs[k], sums[k]))).collect()
 }
 
 /// Makes the plan, or says why there is none.
@@ -162,7 +159,8 @@ pub(super) fn plan(terms: &[ScaledTerm], reach_z: f64) -> Result<Plan, String> {
             };
             let period = (high + lower).max(upper - low).max(1.3 * (high - low));
             let frequencies = frequency * period / (2.0 * std::f64::consts::PI) + 1.0;
-            if frequencies > *most as f64 {
+            let reachable = terms.iter().all(|t| frequency * t.scale.abs() < t.summand.highest_frequency());
+            if frequencies > *most as f64 || !reachable {
                 continue;
             }
             let alias = beyond(terms, period - high, false).max(beyond(terms, period + low, true));

@@ -55,7 +55,8 @@ impl<'a> Ray<'a> {
         let beyond = if direction > 0.0 { density.above(from) } else { density.at_or_below(from) };
         let median = density.quantile(0.5);
         let by_median = (median - from).abs();
-        let by_hazard = if here > 0.0 && here.is_finite() && beyond > 0.0 { beyond / here } else { f64::INFINITY };
+        let by_hazard =
+            if here > 0.0 && here.is_finite() && beyond > 0.0 { beyond / here } else { f64::INFINITY };
         let mut scale = if by_median > 0.0 { by_median.min(by_hazard) } else { by_hazard };
         if !(scale > 0.0 && scale.is_finite()) {
             scale = (near - from).abs();
@@ -65,7 +66,8 @@ impl<'a> Ray<'a> {
 
     /// The largest angle this ray may be turned by, from the family.
     pub fn rotation(&self) -> f64 {
-        let allowed = if self.direction > 0.0 { self.density.rotation_up() } else { self.density.rotation_down() };
+        let allowed =
+            if self.direction > 0.0 { self.density.rotation_up() } else { self.density.rotation_down() };
         allowed.clamp(0.0, std::f64::consts::FRAC_PI_2)
     }
 
@@ -156,7 +158,9 @@ impl<'a> Ray<'a> {
         let mut best = self.transform(s, -full, enough);
         let mut angle = full;
         for _ in 0..4 {
-            if best.error <= enough || best.absolute <= 3.0 * best.value.norm() && best.error <= 4e-15 * best.value.norm() {
+            if best.error <= enough
+                || best.absolute <= 3.0 * best.value.norm() && best.error <= 4e-15 * best.value.norm()
+            {
                 break;
             }
             angle *= 0.5;

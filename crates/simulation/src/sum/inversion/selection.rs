@@ -180,7 +180,10 @@ mod tests {
                 .collect();
             let (found, _) = remainder(&[value], 2, &subtracted);
             let whole = (value.atoms + value.continuous).norm().powi(20);
-            assert!((found - expected).norm() < 1e-12 * expected.norm() + 1e-15 * whole, "{size}: {found} {expected}");
+            assert!(
+                (found - expected).norm() < 1e-12 * expected.norm() + 1e-15 * whole,
+                "{size}: {found} {expected}"
+            );
         }
     }
 }

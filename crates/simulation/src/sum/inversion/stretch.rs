@@ -103,11 +103,14 @@ impl Stretch {
         if !(low < high) {
             return Vec::new();
         }
-        let mut cuts: Vec<f64> = density.breakpoints().into_iter().filter(|b| *b > low && *b < high).collect();
+        let mut cuts: Vec<f64> =
+            density.breakpoints().into_iter().filter(|b| *b > low && *b < high).collect();
         let two_sided = support_low == f64::NEG_INFINITY;
         if two_sided {
             let median = density.quantile(0.5);
-            if median > low && median < high && !cuts.iter().any(|c| (c - median).abs() < 1e-9 * (1.0 + median.abs()))
+            if median > low
+                && median < high
+                && !cuts.iter().any(|c| (c - median).abs() < 1e-9 * (1.0 + median.abs()))
             {
                 cuts.push(median);
             }
@@ -120,7 +123,8 @@ impl Stretch {
         ends.windows(2)
             .map(|w| {
                 let (a, b) = (w[0], w[1]);
-                let downwards = a == f64::NEG_INFINITY || (two_sided && b <= median + 1e-9 * (1.0 + median.abs()));
+                let downwards =
+                    a == f64::NEG_INFINITY || (two_sided && b <= median + 1e-9 * (1.0 + median.abs()));
                 let (start, end, direction) = if downwards { (b, a, -1.0) } else { (a, b, 1.0) };
                 let near = middle_of(density.as_ref(), a, b);
                 Self::build(piece, standard, start, end, direction, near)
@@ -169,7 +173,8 @@ impl Stretch {
         let last = edges.last().copied().unwrap_or(start);
         let mut mean_beyond = 0.0;
         if end.is_infinite() {
-            let beyond = if direction > 0.0 { result.density.above(last) } else { result.density.at_or_below(last) };
+            let beyond =
+                if direction > 0.0 { result.density.above(last) } else { result.density.at_or_below(last) };
             let mass = piece.factor * beyond;
             if result.rotates {
                 let ray = Ray::new(result.density.as_ref(), last, last, direction);
@@ -219,14 +224,23 @@ impl Stretch {
         let difference = (total - rough).abs();
         let too_long = !self.rotates && length > 8.0;
         let splittable = middle != inner && middle != outer;
-        if splittable && ((depth < 60 && difference > 2e-15 * total && total > 1e-17) || (too_long && depth < 12)) {
+        if splittable
+            && ((depth < 60 && difference > 2e-15 * total && total > 1e-17) || (too_long && depth < 12))
+        {
             self.add_panels(inner, middle, fine, coarse, depth + 1);
             self.add_panels(middle, outer, fine, coarse, depth + 1);
             return;
         }
         // The finer rule is better than the coarser one by far more than this factor.
         self.rule_error += if depth < 60 { 1e-2 * difference } else { difference };
-        self.panels.push(StretchPanel { inner, length, nodes, weights, mass_from_here: 0.0, mean_from_here: 0.0 });
+        self.panels.push(StretchPanel {
+            inner,
+            length,
+            nodes,
+            weights,
+            mass_from_here: 0.0,
+            mean_from_here: 0.0,
+        });
     }
 
     /// Total variation of the density over the stretch, jumps at its ends included, per standard unit; from
@@ -326,7 +340,8 @@ impl Stretch {
                 let rest = at_near - at_far;
                 real += rest.re - panel.mass_from_here;
                 imaginary += rest.im + t * panel.mean_from_here;
-                error += near.error + far.error + 1e-16 * (panel.mass_from_here + t * panel.mean_from_here.abs());
+                error +=
+                    near.error + far.error + 1e-16 * (panel.mass_from_here + t * panel.mean_from_here.abs());
                 return (Complex64::new(real, imaginary), error);
             }
             for (x, w) in panel.nodes.iter().zip(&panel.weights) {
@@ -341,7 +356,8 @@ impl Stretch {
             let outer = last.inner + self.direction * last.length / self.multiply.abs();
             let near = self.from_point(outer, t, 0.0);
             let value = Complex64::from_polar(1.0, -t * self.image(outer)) * near.value;
-            let mean = last.mean_from_here - last.nodes.iter().zip(&last.weights).map(|(x, w)| x * w).sum::<f64>();
+            let mean =
+                last.mean_from_here - last.nodes.iter().zip(&last.weights).map(|(x, w)| x * w).sum::<f64>();
             real += value.re - self.mass_beyond;
             imaginary += value.im + t * mean;
             error += near.error + 1e-16 * (self.mass_beyond + t * mean.abs());
@@ -374,8 +390,7 @@ pub(super) fn compensated_kernel(w: f64) -> (f64, f64) {
             - q * (1.0 / 120.0
                 - q * (1.0 / 5040.0
                     - q * (1.0 / 362_880.0
-                        - q * (1.0 / 39_916_800.0
-                            - q * (1.0 / 6_227_020_800.0 - q / 1_307_674_368_000.0)))));
+                        - q * (1.0 / 39_916_800.0 - q * (1.0 / 6_227_020_800.0 - q / 1_307_674_368_000.0)))));
         w * q * series
     } else {
         w - w.sin()

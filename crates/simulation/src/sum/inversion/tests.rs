@@ -61,7 +61,9 @@ fn exponential_sums_are_gamma() {
 #[test]
 fn distances_agree_with_independent_figures() {
     // Re-derived with SciPy: exponential and Irwin–Hall Kolmogorov distances, five and three digits.
-    for (n, reference) in [(1, 0.158655), (2, 0.094463), (5, 0.059629), (10, 0.042114), (30, 0.024291), (100, 0.013300)] {
+    for (n, reference) in
+        [(1, 0.158655), (2, 0.094463), (5, 0.059629), (10, 0.042114), (30, 0.024291), (100, 0.013300)]
+    {
         let distance = build(LawSpec::Exponential { mean: 0.1 }, n).kolmogorov();
         assert!((distance.kolmogorov.value - reference).abs() < 1.1e-6, "{n}: {distance:?}");
     }
@@ -99,7 +101,9 @@ fn named(name: &str) -> LawSpec {
         }
         "lomax-2.3" => LawSpec::Lomax { shape: 2.3, scale: 1.0 },
         "lomax-4.5" => LawSpec::Lomax { shape: 4.5, scale: 1.0 },
-        "lognormal-brute" => LawSpec::Lognormal { log_mean: Some(0.0), log_sd: Some(1.0), mean: None, sd: None },
+        "lognormal-brute" => {
+            LawSpec::Lognormal { log_mean: Some(0.0), log_sd: Some(1.0), mean: None, sd: None }
+        }
         "capped-lomax-brute" => LawSpec::Cap {
             law: Box::new(LawSpec::Lomax { shape: 1.5, scale: 1.0 }),
             low: None,
@@ -138,19 +142,6 @@ fn sums_agree_with_the_references() {
     assert!(checked > 150, "{checked} references checked");
 }
 
-#[test]
-fn many_numbers_of_summands_are_cheap() {
-    let law = law(LawSpec::Lognormal { log_mean: None, log_sd: None, mean: Some(48.0), sd: Some(31.0) });
-    for n in [40_u64, 41, 42, 500, 501, 10_000, 5, 6] {
-        let started = std::time::Instant::now();
-        let sum = InversionSum::build(&SumSpec::like_summands(law.clone(), n), &Method::default(), &Work::new())
-            .expect("invertible");
-        let built = started.elapsed();
-        let distance = sum.kolmogorov();
-        println!("lognormal n={n} built {built:?} with distance {:?} {} {distance:?}", started.elapsed(), sum.detail());
-    }
-}
-
 fn other_laws() -> Vec<(&'static str, LawSpec)> {
     vec![
         ("weibull 0.7", LawSpec::Weibull { shape: 0.7, scale: 2.0 }),
@@ -166,28 +157,59 @@ fn other_laws() -> Vec<(&'static str, LawSpec)> {
         ("beta 2 5", LawSpec::Beta { a: 2.0, b: 5.0, low: None, high: None }),
         ("inverse gaussian", LawSpec::InverseGaussian { mean: 1.0, shape: 0.5 }),
         ("histogram", LawSpec::Histogram { edges: vec![0.0, 1.0, 3.0, 4.0], weights: vec![1.0, 4.0, 2.0] }),
-        ("capped normal", LawSpec::Cap { law: Box::new(LawSpec::Normal { mean: 0.0, sd: 1.0 }), low: Some(-1.0), high: Some(2.0) }),
-        ("restricted lognormal", LawSpec::Restrict {
-            law: Box::new(LawSpec::Lognormal { log_mean: Some(0.0), log_sd: Some(1.5), mean: None, sd: None }),
-            low: Some(0.5),
-            high: Some(100.0),
-        }),
+        (
+            "capped normal",
+            LawSpec::Cap {
+                law: Box::new(LawSpec::Normal { mean: 0.0, sd: 1.0 }),
+                low: Some(-1.0),
+                high: Some(2.0),
+            },
+        ),
+        (
+            "restricted lognormal",
+            LawSpec::Restrict {
+                law: Box::new(LawSpec::Lognormal {
+                    log_mean: Some(0.0),
+                    log_sd: Some(1.5),
+                    mean: None,
+                    sd: None,
+                }),
+                low: Some(0.5),
+                high: Some(100.0),
+            },
+        ),
         ("formula", LawSpec::Formula { density: "x*(3-x)".to_owned(), low: 0.0, high: 3.0 }),
     ]
 }
 
 #[test]
 fn ends_agree_with_quadrature_on_the_axis() {
-    for (name, spec) in other_laws() {
+    for (name, spec) in other_laws().into_iter().filter(|l| !l.0.starts_with("student")) {
         let transform = transform::SummandTransform::new(&law(spec)).expect("finite variance");
         for t in [0.3, 1.01, 1.7, 5.0, 19.0] {
             let value = transform.split(t);
             let twin = transform.continuous_on_the_axis(t);
             let wrong = (value.continuous - twin).norm();
-            println!("{name} {t}: {wrong:.1e} states {:.1e}", value.error);
-            // The twin itself is good to 1e-14, singular ends and far tails excepted.
-            if !(wrong <= value.error + 2e-14) { println!("!!! {name} t = {t}: {wrong:.1e}, states {:.1e}", value.error); }
+            // The twin itself is good to 1e-14.
+            assert!(wrong <= value.error + 1e-14, "{name} t = {t}: {wrong:.1e}, states {:.1e}", value.error);
         }
+    }
+}
+
+#[test]
+fn student_transform_with_three_degrees_is_known() {
+    // e^{−t}(1 + t) in units of 1/sd: the two halves of the law cancel to it.
+    let law = law(LawSpec::StudentT { df: 3.0, location: Some(2.0), scale: Some(0.3) });
+    let transform = transform::SummandTransform::new(&law).expect("finite variance");
+    for t in [1e-3_f64, 0.1, 0.6, 1.5, 4.0, 10.0, 25.0] {
+        let value = transform.split(t);
+        let known = (-t).exp() * (1.0 + t);
+        let wrong = (value.continuous - known).norm();
+        assert!(
+            wrong <= value.error + 1e-16 && value.error < 1e-12,
+            "{t}: {wrong:.1e}, states {:.1e}",
+            value.error
+        );
     }
 }
 
@@ -195,18 +217,27 @@ fn ends_agree_with_quadrature_on_the_axis() {
 fn other_laws_build() {
     for (name, spec) in other_laws() {
         let law = law(spec);
-        for n in [1_u64, 2, 3, 8, 40] {
-            let started = std::time::Instant::now();
-            match InversionSum::build(&SumSpec::like_summands(law.clone(), n), &Method::default(), &Work::new()) {
-                Ok(sum) => {
-                    let took = started.elapsed();
-                    println!(
-                        "{name} n={n} {took:?} err {:.1e} D {:.6} at {:.4} F(0) {:.12} {}",
-                        sum.distribution.error, sum.kolmogorov().kolmogorov.value, sum.kolmogorov().at_z,
-                        sum.at_or_below(0.0).value, sum.detail()
-                    );
-                }
-                Err(e) => println!("{name} n={n}: {:?} {e}", started.elapsed()),
+        for n in [1_u64, 8, 40] {
+            let sum = InversionSum::build(
+                &SumSpec::like_summands(law.clone(), n),
+                &Method::default(),
+                &Work::new(),
+            );
+            // A singular density leaves too slow a decay at small numbers of summands.
+            let Ok(sum) = sum else {
+                assert!(name == "gamma 0.1" && n == 8, "{name} n={n}: {:?}", sum.err());
+                continue;
+            };
+            let distance = sum.kolmogorov();
+            assert!(
+                distance.kolmogorov.error < 1e-10 && distance.kolmogorov.value > 1e-4,
+                "{name} {n}: {distance:?}"
+            );
+            let mut last = 0.0;
+            for k in -80..=80 {
+                let figure = sum.at_or_below(f64::from(k) * 0.1);
+                assert!(figure.value >= last - 2.0 * figure.error, "{name} {n} falls at {k}");
+                last = figure.value;
             }
         }
     }
@@ -233,7 +264,8 @@ fn unlike_parts_and_differences() {
         check("normal and uniform", sum.at_or_below(z), g(x) - g(x - 1.0));
     }
     // The difference of two means of one skewed law with equal numbers is symmetric.
-    let skewed = law(zeros(0.7, LawSpec::Lognormal { log_mean: Some(0.0), log_sd: Some(1.0), mean: None, sd: None }));
+    let skewed =
+        law(zeros(0.7, LawSpec::Lognormal { log_mean: Some(0.0), log_sd: Some(1.0), mean: None, sd: None }));
     let spec = SumSpec {
         terms: vec![
             Term { law: skewed.clone(), count: 60, multiply: -1.0 / 60.0 },
@@ -255,14 +287,17 @@ fn jumps_quantiles_and_shifts() {
     let z = -moments.mean / moments.sd;
     // All five are zero with probability 0.7⁵.
     let jump = sum.at_or_below(z).value - sum.below(z).value;
-    assert!((jump - 0.7_f64.powi(5)).abs() < 1e-14, "{jump}");
+    assert!((jump - 0.7_f64.powi(5)).abs() < 2.0 * sum.below(z).error, "{jump}");
     assert_eq!(sum.jumps(-8.0, 8.0, 10).map(|j| j.len()), Some(1));
     assert!((sum.quantile(0.1).value - z).abs() < 1e-9);
     let quantile = sum.quantile(0.9);
-    assert!((sum.at_or_below(quantile.value).value - 0.9).abs() < 1e-10 && quantile.error < 1e-8, "{quantile:?}");
-    let moved = build(LawSpec::Affine { law: Box::new(spec), add: -1e3, multiply: -1e-7 }, 5);
+    assert!(
+        (sum.at_or_below(quantile.value).value - 0.9).abs() < 1e-10 && quantile.error < 1e-8,
+        "{quantile:?}"
+    );
+    let moved = build(LawSpec::Affine { law: Box::new(spec), add: -3.0, multiply: -0.5 }, 5);
     for z in [-2.0, -0.5, 0.1, 1.0, 3.0] {
         let (one, other) = (sum.below(z), moved.at_or_above(-z));
-        assert!((one.value - other.value).abs() <= one.error + other.error + 1e-9, "{z}: {one:?} {other:?}");
+        assert!((one.value - other.value).abs() <= one.error + other.error + 1e-14, "{z}: {one:?} {other:?}");
     }
 }

@@ -19,8 +19,8 @@ use std::sync::{Arc, OnceLock};
 /// Above this many atoms their compensated transform is interpolated too.
 const DIRECT_ATOMS: usize = 4;
 /// Octaves of t for which a stretch whose rays may not be turned is integrated node by node.
-const DENSE_OCTAVES: usize = 14;
-const DENSE_NODES: usize = 60_000;
+const DENSE_OCTAVES: usize = 8;
+const DENSE_NODES: usize = 12_000;
 /// Absolute error with which what leaves from an end is content.
 const ENOUGH: f64 = 2e-16;
 
@@ -39,8 +39,8 @@ pub(super) struct SplitValue {
 #[derive(Debug)]
 struct EndPoint {
     position: f64,
-    /// Index of the stretch and whether the point is its outer end (which enters with a minus sign).
-    parts: Vec<(usize, bool)>,
+    /// Piece, stretch, and whether the point is its outer end (which enters with a minus sign).
+    parts: Vec<(usize, usize, bool)>,
     table: Octaves,
 }
 
@@ -49,7 +49,6 @@ struct PieceTransform {
     stretches: Vec<Stretch>,
     /// Set where the piece is a whole unbounded family with a closed transform: factor, density, add, multiply (standardized).
     closed: Option<(f64, Arc<dyn Density>, f64, f64)>,
-    ends: Vec<EndPoint>,
     /// For pieces whose rays may not be turned: nodes and weights, per octave of t from 1 on.
     dense: Vec<OnceLock<Vec<(f64, f64)>>>,
     /// Total variation of the density, for the same pieces.
@@ -71,12 +70,15 @@ pub(super) struct SummandTransform {
     pub(super) continuous_mass: f64,
     continuous_mean: f64,
     pieces: Vec<PieceTransform>,
+    ends: Vec<EndPoint>,
     continuous_table: Octaves,
     atoms_table: Octaves,
     ceiling: OnceLock<Ceiling>,
     tails: OnceLock<Tails>,
     /// Error of ψ relative to t², from the quadrature rules and the moments.
     quadrature_error: f64,
+    /// Disagreement of the masses with 1.
+    mass_error: f64,
 }
 
 impl SummandTransform {
@@ -92,7 +94,7 @@ impl SummandTransform {
         let standard = Standard { mean, sd };
         let atoms: Vec<(f64, f64)> = law.atoms.iter().map(|a| ((a.value - mean) / sd, a.mass)).collect();
         let atom_mass: f64 = atoms.iter().map(|a| a.1).sum();
-        let pieces: Vec<PieceTransform> = law.pieces.iter().map(|p| PieceTransform::new(p, standard)).collect();
+        let (pieces, ends) = prepare_pieces(law, standard);
         let (mut mass, mut continuous_mean, mut second, mut rule_error) = (0.0, 0.0, 0.0, 0.0);
         let mut heavy = false;
         for stretch in pieces.iter().flat_map(|p| &p.stretches) {
@@ -110,7 +112,8 @@ impl SummandTransform {
         }
         second += atoms.iter().map(|(x, p)| p * x * x).sum::<f64>();
         let spread = if heavy { (second - 1.0).max(0.0) } else { (second - 1.0).abs() };
-        let quadrature_error = rule_error + spread + (mass + atom_mass - 1.0).abs() + law.missing_mass + 2e-16;
+        let quadrature_error =
+            rule_error + spread + (mass + atom_mass - 1.0).abs() + law.missing_mass + 2e-16;
         Ok(Self {
             law: law.clone(),
             standard,
@@ -119,11 +122,13 @@ impl SummandTransform {
             continuous_mass: mass,
             continuous_mean,
             pieces,
+            ends,
             continuous_table: Octaves::new(-64, -1),
             atoms_table: Octaves::new(-64, -1),
             ceiling: OnceLock::new(),
             tails: OnceLock::new(),
             quadrature_error,
+            mass_error: (mass + atom_mass - 1.0).abs(),
         })
     }
 
@@ -161,8 +166,8 @@ impl SummandTransform {
             }
         }
         if high > 1.0 {
-            for piece in &self.pieces {
-                piece.prepare(low.max(1.0), high);
+            for end in &self.ends {
+                end.table.prepare(&|t| self.from_point(end, t), low.max(1.0), high, 1e-15);
             }
         }
     }
@@ -213,7 +218,7 @@ impl SummandTransform {
                     self.direct_atoms(t)
                 },
                 continuous: Complex64::new(mass, -t * mean) + continuous * square,
-                error: relative * square + 4e-16 * mass,
+                error: relative * square + 4e-16 * mass + self.mass_error,
             };
         }
         let mut continuous = Complex64::ZERO;
@@ -223,7 +228,35 @@ impl SummandTransform {
             continuous += value;
             error += piece_error;
         }
+        for end in &self.ends {
+            let (value, wrong) = end.table.evaluate(&|t| self.from_point(end, t), t, 1e-15);
+            let (sine, cosine) = (t * end.position).sin_cos();
+            continuous += value * Complex64::new(cosine, -sine);
+            error += wrong;
+        }
         SplitValue { atoms: self.direct_atoms(t), continuous, error }
+    }
+
+    /// Everything that leaves from one point, its own oscillation e^{−it·position} taken out.
+    fn from_point(&self, end: &EndPoint, t: f64) -> (Complex64, f64) {
+        let mut sum = Complex64::ZERO;
+        let mut error = 0.0;
+        for (piece, k, outer) in &end.parts {
+            let stretch = &self.pieces[*piece].stretches[*k];
+            let value = if *outer { stretch.from_end(t, ENOUGH) } else { stretch.from_start(t, ENOUGH) };
+            sum += if *outer { -value.value } else { value.value };
+            error += value.error;
+        }
+        (sum, error)
+    }
+
+    /// The highest frequency at which the transform can be had.
+    pub(super) fn highest_frequency(&self) -> f64 {
+        if self.pieces.iter().any(|p| !p.dense.is_empty()) {
+            (DENSE_OCTAVES as f64).exp2()
+        } else {
+            f64::INFINITY
+        }
     }
 
     fn direct_atoms(&self, t: f64) -> Complex64 {
@@ -241,7 +274,11 @@ impl SummandTransform {
     /// The sum of the moduli of what leaves from each end point: each is a Laplace transform along a ray and
     /// falls with t.
     pub(super) fn envelope(&self, t: f64) -> f64 {
-        let sum: f64 = self.pieces.iter().map(|p| p.envelope(t)).sum();
+        let mut sum: f64 = self.pieces.iter().map(|p| p.envelope(t)).sum();
+        for end in &self.ends {
+            let (value, error) = end.table.evaluate(&|t| self.from_point(end, t), t, 1e-15);
+            sum += 1.001 * value.norm() + error;
+        }
         sum.min(self.continuous_mass)
     }
 
@@ -291,66 +328,73 @@ impl SummandTransform {
         edges.dedup_by(|a, b| (*a - *b).abs() <= 1e-13 * (1.0 + a.abs()));
         edges
     }
-
 }
 
-impl PieceTransform {
-    fn new(piece: &crate::law::Piece, standard: Standard) -> Self {
-        let stretches = Stretch::of_piece(piece, standard);
-        let add = (piece.add - standard.mean) / standard.sd;
-        let multiply = piece.multiply / standard.sd;
-        let (low, high) = piece.density.support();
-        let whole = piece.low <= low && piece.high >= high;
-        // The closed transforms of one- and two-sided infinite families fall with t; those of bounded ones swing.
-        let unbounded = low.is_infinite() || high.is_infinite();
-        let closed = (whole && unbounded && piece.density.log_laplace(Complex64::new(0.0, multiply)).is_some())
-            .then(|| (piece.factor, Arc::clone(&piece.density), add, multiply));
-        let mut ends: Vec<EndPoint> = Vec::new();
-        let mut dense = Vec::new();
-        let mut variation = 0.0;
-        if closed.is_none() {
-            if stretches.iter().all(|s| s.rotates) {
-                for (k, stretch) in stretches.iter().enumerate() {
-                    for (position, outer) in [(stretch.start(), false), (stretch.end(), true)] {
-                        let Some(position) = position else { continue };
-                        match ends.iter_mut().find(|e| e.position == position) {
-                            Some(end) => end.parts.push((k, outer)),
-                            None => ends.push(EndPoint {
+/// The pieces, and the end points of all of them: ends at one place are taken together, so that what cancels
+/// there (two halves of a smooth law) does cancel.
+fn prepare_pieces(law: &Law, standard: Standard) -> (Vec<PieceTransform>, Vec<EndPoint>) {
+    let same = |a: f64, b: f64| (a - b).abs() <= 1e-15 * (1.0 + a.abs());
+    let stretches: Vec<Vec<Stretch>> = law.pieces.iter().map(|p| Stretch::of_piece(p, standard)).collect();
+    let shared = |own: usize| {
+        stretches[own].iter().flat_map(|s| [s.start(), s.end()]).flatten().any(|place| {
+            let others = stretches.iter().enumerate().filter(|(k, _)| *k != own).flat_map(|(_, list)| list);
+            others.flat_map(|s| [s.start(), s.end()]).flatten().any(|other| same(place, other))
+        })
+    };
+    let closed: Vec<_> = law
+        .pieces
+        .iter()
+        .enumerate()
+        .map(|(k, piece)| {
+            let multiply = piece.multiply / standard.sd;
+            let (low, high) = piece.density.support();
+            let whole = piece.low <= low && piece.high >= high;
+            // The closed transforms of two-sided infinite families fall with t, and so do those of one-sided
+            // ones, but these may cancel with a neighbour; those of bounded families swing.
+            let falls = low.is_infinite() && high.is_infinite()
+                || (low.is_infinite() || high.is_infinite()) && !shared(k);
+            (whole && falls && piece.density.log_laplace(Complex64::new(0.0, multiply)).is_some()).then(
+                || {
+                    (
+                        piece.factor,
+                        Arc::clone(&piece.density),
+                        (piece.add - standard.mean) / standard.sd,
+                        multiply,
+                    )
+                },
+            )
+        })
+        .collect();
+    let mut ends: Vec<EndPoint> = Vec::new();
+    let mut pieces = Vec::new();
+    for (p, (stretches, closed)) in stretches.into_iter().zip(closed).enumerate() {
+        let (mut dense, mut variation) = (Vec::new(), 0.0);
+        if closed.is_none() && stretches.iter().all(|s| s.rotates) {
+            for (k, stretch) in stretches.iter().enumerate() {
+                for (position, outer) in [(stretch.start(), false), (stretch.end(), true)] {
+                    let Some(position) = position else { continue };
+                    match ends.iter_mut().find(|e| same(e.position, position)) {
+                        Some(end) => end.parts.push((p, k, outer)),
+                        None => {
+                            ends.push(EndPoint {
                                 position,
-                                parts: vec![(k, outer)],
+                                parts: vec![(p, k, outer)],
                                 table: Octaves::new(0, 50),
-                            }),
+                            });
                         }
                     }
                 }
-            } else {
-                dense = (0..DENSE_OCTAVES).map(|_| OnceLock::new()).collect();
-                for stretch in &stretches {
-                    variation += stretch.variation();
-                }
             }
+        } else if closed.is_none() {
+            dense = (0..DENSE_OCTAVES).map(|_| OnceLock::new()).collect();
+            variation = stretches.iter().map(Stretch::variation).sum();
         }
-        Self { stretches, closed, ends, dense, variation }
+        pieces.push(PieceTransform { stretches, closed, dense, variation });
     }
+    (pieces, ends)
+}
 
-    fn prepare(&self, low: f64, high: f64) {
-        for end in &self.ends {
-            end.table.prepare(&|t| self.from_point(end, t), low, high, 1e-15);
-        }
-    }
-
-    /// Everything that leaves from one point, its own oscillation e^{−it·position} taken out.
-    fn from_point(&self, end: &EndPoint, t: f64) -> (Complex64, f64) {
-        let mut sum = Complex64::ZERO;
-        let mut error = 0.0;
-        for (k, outer) in &end.parts {
-            let value = if *outer { self.stretches[*k].from_end(t, ENOUGH) } else { self.stretches[*k].from_start(t, ENOUGH) };
-            sum += if *outer { -value.value } else { value.value };
-            error += value.error;
-        }
-        (sum, error)
-    }
-
+impl PieceTransform {
     fn dense_nodes(&self, t: f64) -> Option<&[(f64, f64)]> {
         let octave = t.log2().floor().max(0.0) as usize;
         let nodes = self.dense.get(octave)?.get_or_init(|| {
@@ -377,13 +421,6 @@ impl PieceTransform {
         }
         let mut sum = Complex64::ZERO;
         let mut error = 0.0;
-        for end in &self.ends {
-            let (value, interpolation) =
-                end.table.evaluate(&|t| self.from_point(end, t), t, 1e-15);
-            let (sine, cosine) = (t * end.position).sin_cos();
-            sum += value * Complex64::new(cosine, -sine);
-            error += interpolation;
-        }
         if !self.dense.is_empty() {
             match self.dense_nodes(t) {
                 Some(nodes) => {
@@ -406,14 +443,6 @@ impl PieceTransform {
                 None => *factor,
             };
         }
-        let mut sum = 0.0;
-        for end in &self.ends {
-            let (value, error) = end.table.evaluate(&|t| self.from_point(end, t), t, 1e-15);
-            sum += 1.001 * value.norm() + error;
-        }
-        if !self.dense.is_empty() {
-            sum += self.variation / t;
-        }
-        sum
+        if self.dense.is_empty() { 0.0 } else { self.variation / t }
     }
 }
