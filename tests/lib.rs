@@ -1,1 +1,3 @@
-//! Helpers shared by the checks against published and independent sources.
+//! Checks against published and independent sources, and what they share.
+
+pub mod pilot_data;

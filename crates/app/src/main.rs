@@ -1,3 +1,7 @@
 //! The `gaussgap` binary.
 
-fn main() {}
+use std::process::ExitCode;
+
+fn main() -> ExitCode {
+    gaussgap_app::command::run()
+}

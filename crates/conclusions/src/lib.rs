@@ -1,7 +1,21 @@
 //! Conclusions about the normal approximation of a sum: scenario in, report out.
 
+mod assess;
+mod bounds;
+mod cautions;
+mod claims;
+mod facts;
+mod figures;
+mod growth;
+mod prepared;
+mod remedies;
 pub mod report;
+mod rules_of_thumb;
+mod safe_from;
 pub mod scenario;
+pub mod words;
+
+pub use words::{describe_law, plan_sentence, summary_paragraph};
 
 use gaussgap_simulation::work::{Cancelled, Work};
 use report::Report;
@@ -48,7 +62,10 @@ impl Effort {
 }
 
 /// Assesses a scenario whose `data` laws already carry their values.
+///
+/// Everything the report contains is computed at the planned n; `effort` decides whether the growth curve, the
+/// search for *safe from* and the remedies are computed too. A bad scenario gives every problem with its JSON
+/// pointer; a cancelled `work` gives [`AssessError::Cancelled`] soon after.
 pub fn assess(scenario: &Scenario, effort: Effort, work: &Work) -> Result<Report, AssessError> {
-    let _ = (scenario, effort, work);
-    todo!()
+    assess::assess(scenario, effort, work)
 }

@@ -3,11 +3,24 @@
 //! [`build`] picks the best route (closed form, lattice, inversion, simulation) and says which it took. All
 //! routes answer the same questions through [`StandardizedSum`], always in standard units z.
 
+pub mod closed_form;
+mod continuous;
+pub mod contour;
+#[cfg(test)]
+mod counted_checks;
+mod counting;
 pub mod inversion;
+pub mod lattice;
+mod route;
+mod steps;
+mod supremum;
+mod twofold;
 
 use crate::figure::Figure;
 use crate::law::Law;
-use crate::work::{Cancelled, Work};
+use crate::work::Cancelled;
+
+pub use route::{build, build_exact};
 
 /// How a distribution was obtained.
 #[derive(Debug, Clone, Copy, PartialEq, Eq, serde::Serialize, serde::Deserialize, schemars::JsonSchema)]
@@ -176,10 +189,4 @@ pub enum SumError {
         /// Why not, as a clause: `"the law is not on a lattice"`.
         reason: String,
     },
-}
-
-/// Builds the distribution of the standardized sum by the route `method` asks for.
-pub fn build(spec: &SumSpec, method: &Method, work: &Work) -> Result<Box<dyn StandardizedSum>, SumError> {
-    let _ = (spec, method, work);
-    todo!()
 }

@@ -1,5 +1,17 @@
 //! The scenario document (`gaussgap-scenario/1`) as typed data.
 
+mod data;
+mod defaults;
+mod fields;
+mod laws;
+mod overrides;
+mod read;
+mod write;
+
+pub use data::DataRequest;
+pub use overrides::{apply_overrides, parse_override};
+pub use read::LARGEST_N;
+
 use gaussgap_simulation::law::LawSpec;
 use gaussgap_simulation::sum::RouteChoice;
 use serde::{Deserialize, Serialize};
@@ -118,7 +130,9 @@ pub enum Direction {
 #[derive(Debug, Clone, Copy, PartialEq, Serialize, schemars::JsonSchema)]
 #[serde(tag = "kind", rename_all = "kebab-case", deny_unknown_fields)]
 #[allow(missing_docs, reason = "the parameters carry their field's usual names")]
+#[derive(Default)]
 pub enum Claim {
+    #[default]
     Curve,
     Interval {
         level: f64,
@@ -192,8 +206,8 @@ pub struct Scenario {
     /// What is measured.
     #[serde(skip_serializing_if = "Option::is_none")]
     pub quantity: Option<Quantity>,
-    /// Where the summands come from.
-    #[serde(flatten)]
+    /// Where the summands come from. Values loaded from a data file are not written: path and column are.
+    #[serde(flatten, serialize_with = "write::source_without_loaded_values")]
     pub source: Source,
     /// Which statistic.
     pub statistic: Statistic,

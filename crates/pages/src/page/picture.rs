@@ -1,0 +1,29 @@
+//! From the page's SVG to a PNG, with the embedded font and nothing of the machine's.
+
+use super::text::{BOLD, REGULAR};
+use resvg::{tiny_skia, usvg};
+use std::sync::{Arc, LazyLock};
+
+/// The embedded fonts, read once.
+static FONTS: LazyLock<Arc<usvg::fontdb::Database>> = LazyLock::new(|| {
+    let mut fonts = usvg::fontdb::Database::new();
+    fonts.load_font_source(usvg::fontdb::Source::Binary(Arc::new(REGULAR)));
+    fonts.load_font_source(usvg::fontdb::Source::Binary(Arc::new(BOLD)));
+    Arc::new(fonts)
+});
+
+/// Draws an SVG of the given size (in units) with `scale` dots per unit.
+pub(super) fn png(svg: &str, size: (u32, u32), scale: f32) -> Vec<u8> {
+    let options = usvg::Options {
+        font_family: "DejaVu Sans".to_owned(),
+        fontdb: Arc::clone(&FONTS),
+        ..usvg::Options::default()
+    };
+    // Our own SVG is well-formed whatever the report says, and the sizes are at most 4 × 1754: neither can fail.
+    let tree = usvg::Tree::from_str(svg, &options).expect("the page's own SVG is well-formed");
+    let dots = |length: u32| (length as f32 * scale).round() as u32;
+    let mut pixels =
+        tiny_skia::Pixmap::new(dots(size.0), dots(size.1)).expect("page sizes are neither empty nor huge");
+    resvg::render(&tree, tiny_skia::Transform::from_scale(scale, scale), &mut pixels.as_mut());
+    pixels.encode_png().expect("pixels in memory can be encoded")
+}

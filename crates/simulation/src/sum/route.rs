@@ -1,0 +1,102 @@
+//! Which route a sum takes: the best exact one that certifies its error, simulation otherwise.
+
+use super::closed_form::ClosedFormSum;
+use super::contour::ContourSum;
+use super::inversion::InversionSum;
+use super::lattice::LatticeSum;
+use super::{Method, Route, RouteChoice, StandardizedSum, SumError, SumSpec, Term};
+use crate::monte_carlo::sums::SimulatedSum;
+use crate::work::Work;
+
+type Built = Result<Box<dyn StandardizedSum>, SumError>;
+
+fn boxed<T: StandardizedSum + 'static>(built: Result<T, SumError>) -> Built {
+    built.map(|sum| Box::new(sum) as Box<dyn StandardizedSum>)
+}
+
+/// Builds the distribution of the standardized sum by the route `method` asks for.
+///
+/// `Auto` takes the closed form, else the lattice transform, else inversion; where none of them can certify its
+/// error it simulates, and the detail of the result says why the exact routes were refused.
+pub fn build(spec: &SumSpec, method: &Method, work: &Work) -> Built {
+    has_variance(spec)?;
+    match method.route {
+        RouteChoice::Auto => match build_exact(spec, method, work) {
+            Err(SumError::NotAvailable { reason, .. }) => simulate(spec, method, &reason, work),
+            decided => decided,
+        },
+        RouteChoice::ClosedForm => boxed(ClosedFormSum::build(spec, method, work)),
+        RouteChoice::Lattice => boxed(LatticeSum::build(spec, method, work)),
+        RouteChoice::Inversion => invert(spec, method, work),
+        RouteChoice::Simulation => simulate(spec, method, "simulation was asked for", work),
+    }
+}
+
+/// Builds the distribution by the best exact route; `NotAvailable` says why there is none.
+pub fn build_exact(spec: &SumSpec, method: &Method, work: &Work) -> Built {
+    has_variance(spec)?;
+    if let Some(reason) = spec.terms.iter().find_map(|term| term.law.only_simulation.as_ref())
+        && spec.terms.iter().all(|term| term.law.closed_form.is_none())
+    {
+        return Err(SumError::NotAvailable { route: Route::Inversion, reason: reason.clone() });
+    }
+    let routes: [fn(&SumSpec, &Method, &Work) -> Built; 3] = [
+        |spec, method, work| boxed(ClosedFormSum::build(spec, method, work)),
+        |spec, method, work| boxed(LatticeSum::build(spec, method, work)),
+        invert,
+    ];
+    let discrete = spec.terms.iter().all(|term| term.law.pieces.is_empty());
+    let mut reasons = Vec::new();
+    for (index, route) in routes.iter().enumerate() {
+        match route(spec, method, work) {
+            Err(SumError::NotAvailable { reason, .. }) => {
+                // Why a density has no closed form and no lattice goes without saying.
+                if index == 2 || (index == 1 && discrete) {
+                    reasons.push(reason);
+                }
+            }
+            decided => return decided,
+        }
+    }
+    Err(SumError::NotAvailable { route: Route::Inversion, reason: reasons.join("; ") })
+}
+
+fn has_variance(spec: &SumSpec) -> Result<(), SumError> {
+    let variance = |term: &Term| term.law.variance().filter(|variance| variance.is_finite());
+    let varies = |term: &Term| {
+        term.count > 0 && term.multiply != 0.0 && variance(term).is_some_and(|variance| variance > 0.0)
+    };
+    if spec.terms.iter().all(|term| variance(term).is_some()) && spec.terms.iter().any(varies) {
+        Ok(())
+    } else {
+        Err(SumError::NoVariance)
+    }
+}
+
+/// Up to this many summands a deformed contour is tried before the transform, which then decays slowly.
+const FEW_SUMMANDS: u64 = 30;
+
+fn invert(spec: &SumSpec, method: &Method, work: &Work) -> Built {
+    let n: u64 = spec.terms.iter().map(|term| term.count).sum();
+    let contour = || boxed(ContourSum::build(spec, method, work));
+    if n <= FEW_SUMMANDS
+        && let decided @ (Ok(_) | Err(SumError::Cancelled(_) | SumError::NoVariance)) = contour()
+    {
+        return decided;
+    }
+    // The transform takes every law, so its reason is the one that tells something.
+    match boxed(InversionSum::build(spec, method, work)) {
+        Err(SumError::NotAvailable { route, reason }) if n > FEW_SUMMANDS => match contour() {
+            Err(SumError::NotAvailable { .. }) => Err(SumError::NotAvailable { route, reason }),
+            decided => decided,
+        },
+        decided => decided,
+    }
+}
+
+fn simulate(spec: &SumSpec, method: &Method, reason: &str, work: &Work) -> Built {
+    boxed(SimulatedSum::build(spec, method, &PROBES, reason, work))
+}
+
+/// Where a simulation sharpens its tail probabilities.
+const PROBES: [f64; 9] = [-4.0, -3.0, -2.0, -1.0, 0.0, 1.0, 2.0, 3.0, 4.0];
