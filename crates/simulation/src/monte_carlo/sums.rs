@@ -6,7 +6,7 @@
 //! but in closed form) at all edges of the grid, all lattice points and all listed jumps, shared among them by
 //! Bonferroni's inequality like those at the probes. Each number gets the common part of the
 //! bands that apply. All are exact statements about binomial counts, none relies on a normal approximation. The
-//! error of drawing by table ([`super::tabulated`]) is added to each.
+//! error of drawing by table (`tabulated`) is added to each.
 //!
 //! **Grid.** Only counts in the cells of a fixed grid (one per point for lattice sums) are kept. At a z inside a
 //! cell the distribution function lies between its values at the edges, and the stated error includes that; at

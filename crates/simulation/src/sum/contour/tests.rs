@@ -355,3 +355,19 @@ fn one_summand_of_many_laws() {
     }
     assert!(refused.len() <= 5, "{refused:?}");
 }
+
+/// Many summands, where Fourier inversion would do as well: exponentials against the gamma law.
+#[test]
+fn many_summands() {
+    for n in [200u64, 5_000] {
+        let sum = built(&named("exponential"), n);
+        let (shape, root) = (n as f64, (n as f64).sqrt());
+        for z in [-6.0, -3.0, -0.5, 0.0, 1.0, 3.5, 7.0] {
+            let x = shape + z * root;
+            let what = format!("n = {n}, z = {z}");
+            assert_within(sum.at_or_below(z), gamma::below(shape, x), 1e-10, &what);
+            assert_within(sum.above(z), gamma::above(shape, x), 1e-10, &what);
+        }
+        println!("n = {n}: {}", sum.detail());
+    }
+}
