@@ -172,7 +172,7 @@ impl PairSum {
         let mut sum = 0.0;
         for w in cuts.windows(2) {
             let (a, b) = (w[0], w[1]);
-            if !(b > a) {
+            if b <= a {
                 continue;
             }
             let middle = 0.5 * (a + b);

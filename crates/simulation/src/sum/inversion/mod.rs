@@ -85,7 +85,7 @@ impl InversionSum {
         work.set_fraction(0.3);
         let fourier =
             if plan.frequencies > 0 { Some(transform_part(&terms, &plan, &mut error, work)?) } else { None };
-        if !(error <= LARGEST_ERROR) {
+        if error.is_nan() || error > LARGEST_ERROR {
             return Err(refuse(format!("the error of the inversion could only be bounded by {error:.1e}")));
         }
         let detail = describe(&plan, fourier.as_ref(), &few);

@@ -106,7 +106,7 @@ pub(super) fn below(law: &Law, x: f64) -> f64 {
 
 /// factor·P(low < Y ≤ high) for the family of a piece, from whichever tail is smaller.
 pub(super) fn interval_mass(piece: &crate::law::Piece, low: f64, high: f64) -> f64 {
-    if !(low < high) {
+    if low.is_nan() || high.is_nan() || low >= high {
         return 0.0;
     }
     let density = piece.density.as_ref();

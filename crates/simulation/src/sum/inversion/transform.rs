@@ -167,7 +167,7 @@ impl SummandTransform {
         }
         if high > 1.0 {
             for end in &self.ends {
-                end.table.prepare(&|t| self.from_point(end, t), low.max(1.0), high, 1e-15);
+                end.table.prepare(&|t| self.seen_from(end, t), low.max(1.0), high, 1e-15);
             }
         }
     }
@@ -229,7 +229,7 @@ impl SummandTransform {
             error += piece_error;
         }
         for end in &self.ends {
-            let (value, wrong) = end.table.evaluate(&|t| self.from_point(end, t), t, 1e-15);
+            let (value, wrong) = end.table.evaluate(&|t| self.seen_from(end, t), t, 1e-15);
             let (sine, cosine) = (t * end.position).sin_cos();
             continuous += value * Complex64::new(cosine, -sine);
             error += wrong;
@@ -238,12 +238,13 @@ impl SummandTransform {
     }
 
     /// Everything that leaves from one point, its own oscillation e^{−it·position} taken out.
-    fn from_point(&self, end: &EndPoint, t: f64) -> (Complex64, f64) {
+    fn seen_from(&self, end: &EndPoint, t: f64) -> (Complex64, f64) {
         let mut sum = Complex64::ZERO;
         let mut error = 0.0;
         for (piece, k, outer) in &end.parts {
             let stretch = &self.pieces[*piece].stretches[*k];
-            let value = if *outer { stretch.from_end(t, ENOUGH) } else { stretch.from_start(t, ENOUGH) };
+            let value =
+                if *outer { stretch.seen_from_end(t, ENOUGH) } else { stretch.seen_from_start(t, ENOUGH) };
             sum += if *outer { -value.value } else { value.value };
             error += value.error;
         }
@@ -276,7 +277,7 @@ impl SummandTransform {
     pub(super) fn envelope(&self, t: f64) -> f64 {
         let mut sum: f64 = self.pieces.iter().map(|p| p.envelope(t)).sum();
         for end in &self.ends {
-            let (value, error) = end.table.evaluate(&|t| self.from_point(end, t), t, 1e-15);
+            let (value, error) = end.table.evaluate(&|t| self.seen_from(end, t), t, 1e-15);
             sum += 1.001 * value.norm() + error;
         }
         sum.min(self.continuous_mass)
