@@ -1,6 +1,7 @@
 //! The arguments `gaussgap` understands.
 
 use clap::{Parser, Subcommand, ValueEnum};
+use crate::shell::Renderer;
 use std::path::PathBuf;
 
 const EXIT_STATUSES: &str = "\
@@ -75,17 +76,6 @@ pub struct AssessArguments {
     /// No text summary.
     #[arg(long)]
     pub quiet: bool,
-}
-
-/// How the window is drawn.
-#[derive(Debug, Clone, Copy, PartialEq, Eq, ValueEnum)]
-pub enum Renderer {
-    /// OpenGL where there is a good one, else the processor.
-    Auto,
-    /// OpenGL.
-    Gl,
-    /// The processor.
-    Cpu,
 }
 
 /// Documents that have a schema.

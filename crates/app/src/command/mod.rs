@@ -41,8 +41,12 @@ fn print_schema(document: Document) -> Status {
     if written.is_ok() { Status::Holds } else { Status::Failure }
 }
 
-fn open_window(scenario: Option<std::path::PathBuf>, renderer: arguments::Renderer) -> Status {
-    let _ = (scenario, renderer);
-    eprintln!("gaussgap: the window is not part of this build; gaussgap assess works without it");
-    Status::Failure
+fn open_window(scenario: Option<std::path::PathBuf>, renderer: crate::shell::Renderer) -> Status {
+    match crate::window::run(crate::window::WindowRequest { scenario, renderer }) {
+        Ok(()) => Status::Holds,
+        Err(message) => {
+            eprintln!("gaussgap: {message}");
+            Status::Failure
+        }
+    }
 }

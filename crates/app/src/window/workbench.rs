@@ -117,6 +117,12 @@ impl Workbench {
         }
     }
 
+    /// Gives a drawing context the faces and styles of the window; needed once, before the first frame.
+    pub fn prepare(ctx: &egui::Context) {
+        tokens::install(ctx);
+        ctx.options_mut(|options| options.zoom_with_keyboard = false);
+    }
+
     /// Keeps the session in its file when the window closes.
     pub fn keep_session(&mut self) {
         self.keeps_session = true;
@@ -159,8 +165,6 @@ impl Workbench {
             let context = ctx.clone();
             self.worker = Some(Worker::new(Arc::clone(&self.engine), Arc::new(move || context.request_repaint())));
             self.context = Some(ctx.clone());
-            tokens::install(ctx);
-            ctx.options_mut(|options| options.zoom_with_keyboard = false);
         }
         self.appearance(ctx);
         self.seconds = ctx.input(|input| input.time);

@@ -39,9 +39,8 @@ pub fn draw(ui: &mut Ui, rect: Rect, view: &View<'_>) -> Asked {
         .fold(-4.0, f64::min);
     let floor = lowest.max(-12.0) - 0.3;
     let plot = Plot::new(ui, rect, z_axis(view), Axis::new(floor, 0.0, Scale::Log, "tail probability"));
-    for line in [|p: &crate::window::model::prepared::Prepared| &p.tail_low[..], |p| &p.tail_high[..]] {
-        fit::ghosts(&plot, ui, view, line);
-    }
+    fit::ghosts(&plot, ui, view, |pin| &pin.tail_low);
+    fit::ghosts(&plot, ui, view, |pin| &pin.tail_high);
     for line in [&shown.normal_low, &shown.normal_high] {
         plot.line(line, Ink::new(palette.normal, dash::NORMAL));
     }

@@ -193,7 +193,8 @@ pub fn show(ctx: &Context, dialog: &mut Dialog) -> Option<Answer> {
         }
     });
     let escape = ctx.input_mut(|input| input.consume_key(egui::Modifiers::NONE, Key::Escape));
-    shown.inner.or((escape || shown.should_close()).then_some(Answer::Cancel))
+    let left = escape || shown.should_close();
+    shown.inner.or(left.then_some(Answer::Cancel))
 }
 
 fn title(ui: &mut Ui, words: &str) {
