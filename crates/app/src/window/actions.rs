@@ -134,7 +134,7 @@ impl Workbench {
 
     fn go_to_n(&mut self, ctx: &Context) {
         self.start_page = false;
-        let id = Id::new(("n", 0usize));
+        let id = Id::unique(("n", 0usize));
         ctx.memory_mut(|memory| memory.request_focus(id));
         if let Some(mut state) = egui::TextEdit::load_state(ctx, id) {
             let all = egui::text::CCursorRange::two(egui::text::CCursor::new(0), egui::text::CCursor::new(40));

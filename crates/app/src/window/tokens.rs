@@ -165,6 +165,7 @@ pub fn install(ctx: &egui::Context) {
         spacing.indent = 14.0;
         spacing.combo_width = 60.0;
         spacing.scroll.floating = false;
+        spacing.scroll.foreground_color = false;
         spacing.scroll.bar_width = 7.0;
         spacing.scroll.bar_inner_margin = 3.0;
         spacing.scroll.bar_outer_margin = 0.0;
@@ -214,6 +215,10 @@ fn visuals(palette: &Palette, base: Visuals) -> Visuals {
         widget.corner_radius = corner;
         widget.expansion = 0.0;
     }
+    // Rails and scroll handles are drawn with the strong fill, buttons with the weak one.
+    widgets.inactive.bg_fill = palette.line;
+    widgets.hovered.bg_fill = palette.muted;
+    widgets.active.bg_fill = palette.muted;
     widgets.active.bg_stroke = Stroke::new(2.0, palette.accent);
     visuals
 }

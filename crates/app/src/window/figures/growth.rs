@@ -67,7 +67,7 @@ fn handle(ui: &mut Ui, plot: &Plot, view: &View<'_>, n: f64) -> Asked {
     }
     let grip = Rect::from_center_size(pos2(x, plot.area.top() + 5.0), vec2(20.0, 18.0));
     let whole = grip.union(Rect::from_center_size(pos2(x, plot.area.center().y), vec2(9.0, plot.area.height())));
-    let id = ui.id().with("planned n");
+    let id = ui.scope_id().with("planned n");
     let response = ui.interact(whole, id, Sense::click_and_drag()).on_hover_cursor(CursorIcon::ResizeHorizontal);
     response.widget_info(|| WidgetInfo::slider(true, n, "Planned n (handle in Growth)"));
     let held = response.hovered() || response.dragged() || response.has_focus();

@@ -90,7 +90,7 @@ impl Plot {
             .collect();
         let label_width = y_ticks.iter().map(|(_, label)| label.size().x).fold(0.0, f32::max);
         let area = Rect::from_min_max(
-            pos2(outer.left() + label_width + 8.0, outer.top() + line_height + 2.0),
+            pos2(outer.left() + label_width + 8.0, outer.top() + line_height + 9.0),
             pos2(outer.right() - 10.0, outer.bottom() - line_height - 6.0),
         );
         let plot = Self { painter: painter.clone(), area, x, y, palette };

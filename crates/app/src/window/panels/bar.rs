@@ -29,7 +29,7 @@ pub fn show(ui: &mut Ui, fields: &mut Fields, document: &Document, bar: Bar, ask
         ui.add_space(6.0);
         if !bar.start_page {
             let title = document.scenario().title.clone().unwrap_or_default();
-            let spec = Field { hint: "untitled plan", ..Field::card(Id::new("title"), "Title", 250.0) };
+            let spec = Field { hint: "untitled plan", ..Field::card(Id::unique("title"), "Title", 250.0) };
             if let Some(title) = fields::text(ui, fields, &spec, &title) {
                 asks.edit(Edit::Title(title));
             }

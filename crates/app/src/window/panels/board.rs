@@ -112,7 +112,7 @@ fn tile(ui: &mut Ui, size: Vec2, figure: Figure, board: &mut Board, view: &View<
     let frame = Frame::new().fill(palette.card).stroke(Stroke::new(1.0, palette.line)).corner_radius(tokens::CORNER);
     ui.painter().add(frame.paint(outer.shrink(1.0)));
     let inner = outer.shrink2(vec2(10.0, 7.0));
-    let builder = UiBuilder::new().id_salt(("tile", figure)).max_rect(inner);
+    let builder = UiBuilder::new().layout(egui::Layout::top_down(egui::Align::Min)).id_salt(("tile", figure)).max_rect(inner);
     let mut child = ui.new_child(builder);
     let ui = &mut child;
     ui.set_clip_rect(outer.intersect(ui.clip_rect()));
@@ -127,11 +127,11 @@ fn tile(ui: &mut Ui, size: Vec2, figure: Figure, board: &mut Board, view: &View<
     if body.height() < 20.0 {
         return;
     }
-    let mut content = ui.new_child(UiBuilder::new().id_salt("body").max_rect(body));
+    let mut content = ui.new_child(UiBuilder::new().layout(egui::Layout::top_down(egui::Align::Min)).id_salt("body").max_rect(body));
     if as_table {
-        table::show(&mut content, Id::new(("table", figure)), &figure.table(view));
+        table::show(&mut content, Id::unique(("table", figure)), &figure.table(view));
     } else {
-        let id = content.id().with("figure");
+        let id = content.scope_id().with("figure");
         let response = content.interact(body, id, Sense::hover());
         let name = format!("{}: {}", figure.title(), figure.readout(&View { cursor: None, ..*view }));
         response.widget_info(|| WidgetInfo::labeled(egui::accesskit::Role::Image, true, &name));
@@ -146,7 +146,7 @@ fn tile(ui: &mut Ui, size: Vec2, figure: Figure, board: &mut Board, view: &View<
     if figure.is_drawing() {
         let words = RichText::new(figure.readout(view)).size(tokens::SMALL).color(palette.muted);
         let rect = Rect::from_min_max(pos2(inner.left(), inner.bottom() - 15.0), inner.max);
-        let mut footer = ui.new_child(UiBuilder::new().id_salt("footer").max_rect(rect));
+        let mut footer = ui.new_child(UiBuilder::new().layout(egui::Layout::top_down(egui::Align::Min)).id_salt("footer").max_rect(rect));
         footer.add(egui::Label::new(words).truncate());
     }
 }

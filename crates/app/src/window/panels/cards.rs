@@ -92,7 +92,7 @@ impl Cards<'_> {
             let counted = if word == "Part" { "copies" } else { "n" };
             ui.label(counted);
             let label = format!("{word} {}: {counted}", slot + 1);
-            let spec = Field::card(Id::new(("count", slot)), &label, 80.0);
+            let spec = Field::card(Id::unique(("count", slot)), &label, 80.0);
             let n = i64::try_from(n).unwrap_or(i64::MAX);
             let typed = fields::whole(ui, self.fields, &spec, n, (1, LARGEST_N as i64));
             if let Some(n) = typed.and_then(|n| u64::try_from(n).ok()) {
@@ -224,7 +224,7 @@ impl Cards<'_> {
     }
 
     fn id(&self, place: &Place, name: &str) -> Id {
-        Id::new((place.slot, &place.path, name))
+        Id::unique((place.slot, &place.path, name))
     }
 
     fn parameters(&mut self, ui: &mut Ui, place: &Place, law: &LawSpec) {
@@ -473,20 +473,20 @@ impl Cards<'_> {
             Some(Dependence::MovingAverage { weights }) => {
                 let list = |values: &Vec<f64>| values.iter().map(|v| numbers::plain(*v)).collect::<Vec<_>>().join(", ");
                 let width = ui.available_width();
-                let spec = Field::card(Id::new("ma weights"), "Weights of the moving average", width);
+                let spec = Field::card(Id::unique("ma weights"), "Weights of the moving average", width);
                 let typed = fields::field(ui, self.fields, &spec, &list(weights), numbers::read_list, list).1;
                 if let Some(weights) = typed {
                     self.asks.edit(like(Some(Dependence::MovingAverage { weights })));
                 }
             }
             Some(Dependence::Autoregressive { correlation }) => {
-                let spec = Field::card(Id::new("ar correlation"), "Correlation of neighbours", 100.0);
+                let spec = Field::card(Id::unique("ar correlation"), "Correlation of neighbours", 100.0);
                 if let Some(correlation) = fields::real(ui, self.fields, &spec, *correlation) {
                     self.asks.edit(like(Some(Dependence::Autoregressive { correlation })));
                 }
             }
             Some(Dependence::WithoutReplacement { population }) => {
-                let spec = Field::card(Id::new("population"), "Size of the population", 100.0);
+                let spec = Field::card(Id::unique("population"), "Size of the population", 100.0);
                 let now = i64::try_from(*population).unwrap_or(i64::MAX);
                 let typed = fields::whole(ui, self.fields, &spec, now, (1, 1_000_000_000_000));
                 if let Some(population) = typed.and_then(|p| u64::try_from(p).ok()) {

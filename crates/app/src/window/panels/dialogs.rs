@@ -183,7 +183,7 @@ pub fn completions(text: &str, endings: &[&str]) -> Vec<String> {
 
 /// Draws the open dialog; answers at most once.
 pub fn show(ctx: &Context, dialog: &mut Dialog) -> Option<Answer> {
-    let shown = Modal::new(Id::new("dialog")).show(ctx, |ui| {
+    let shown = Modal::new(Id::unique("dialog")).show(ctx, |ui| {
         ui.set_width((ctx.content_rect().width() - 64.0).min(560.0));
         match dialog {
             Dialog::Path(dialog) => path(ui, dialog),
@@ -214,7 +214,7 @@ fn path(ui: &mut Ui, dialog: &mut PathDialog) -> Option<Answer> {
             }
         });
     }
-    let id = Id::new("path");
+    let id = Id::unique("path");
     let edit = TextEdit::singleline(&mut dialog.text).id(id).desired_width(f32::INFINITY).hint_text("path of the file");
     let response = ui.name_inputs("Path", |ui| ui.add(edit));
     if ui.memory(|memory| memory.focused().is_none()) {

@@ -38,6 +38,7 @@ pub fn show(
     let before = fields.problems.len();
     ui.horizontal_wrapped(|ui| {
         ui.spacing_mut().item_spacing.x = 0.0;
+        ui.spacing_mut().interact_size.y = 10.0;
         Sentence { ui, fields, scenario, near, asks }.write();
     });
     n_slider(ui, scenario, asks);
@@ -161,7 +162,7 @@ impl Sentence<'_> {
     }
 
     fn n(&mut self, slot: usize, n: u64, label: &str) {
-        let spec = Field::word(Id::new(("n", slot)), label);
+        let spec = Field::word(Id::unique(("n", slot)), label);
         let n = i64::try_from(n).unwrap_or(i64::MAX);
         let typed = fields::whole(self.ui, self.fields, &spec, n, (1, LARGEST_N as i64));
         if let Some(n) = typed.and_then(|n| u64::try_from(n).ok()) {
@@ -183,12 +184,12 @@ impl Sentence<'_> {
         Popup::menu(&response).close_behavior(PopupCloseBehavior::CloseOnClickOutside).show(|ui| {
             ui.set_width(220.0);
             ui.label("Name, in the singular");
-            let spec = Field::card(Id::new("quantity name"), "Name of the quantity", 210.0);
+            let spec = Field::card(Id::unique("quantity name"), "Name of the quantity", 210.0);
             if let Some(name) = fields::text(ui, fields, &spec, &name) {
                 asks.edit(Edit::QuantityName(name));
             }
             ui.label("Unit");
-            let spec = Field::card(Id::new("quantity unit"), "Unit of the quantity", 210.0);
+            let spec = Field::card(Id::unique("quantity unit"), "Unit of the quantity", 210.0);
             if let Some(unit) = fields::text(ui, fields, &spec, quantity.unit.as_deref().unwrap_or("")) {
                 asks.edit(Edit::QuantityUnit(unit));
             }
@@ -198,7 +199,7 @@ impl Sentence<'_> {
     fn interval(&mut self, level: f64, sides: Sides, spread: Spread) {
         self.subject();
         self.say(", at a level of ");
-        let spec = Field::word(Id::new("level"), "Level");
+        let spec = Field::word(Id::unique("level"), "Level");
         if let Some(level) = fields::percent(self.ui, self.fields, &spec, level) {
             self.asks.edit(Edit::Claim(Claim::Interval { level, sides, spread }));
         }
@@ -219,7 +220,7 @@ impl Sentence<'_> {
         };
         self.subject();
         self.say(" at a significance of ");
-        let spec = Field::word(Id::new("significance"), "Significance");
+        let spec = Field::word(Id::unique("significance"), "Significance");
         if let Some(significance) = fields::percent(self.ui, self.fields, &spec, significance) {
             self.asks.edit(claim(significance, sides, spread, shift));
         }
@@ -232,7 +233,7 @@ impl Sentence<'_> {
             self.asks.edit(claim(significance, sides, spread, shift));
         }
         self.say(", planning for a shift of ");
-        let spec = Field { hint: "no", ..Field::word(Id::new("shift"), "Planned shift in sd") };
+        let spec = Field { hint: "no", ..Field::word(Id::unique("shift"), "Planned shift in sd") };
         if let Some(shift) = fields::optional_real(self.ui, self.fields, &spec, shift) {
             self.asks.edit(claim(significance, sides, spread, shift));
         }
@@ -249,7 +250,7 @@ impl Sentence<'_> {
             self.asks.edit(Edit::Claim(Claim::Threshold { at, direction }));
         }
         self.say(" ");
-        let spec = Field::word(Id::new("threshold"), "Threshold");
+        let spec = Field::word(Id::unique("threshold"), "Threshold");
         if let Some(at) = fields::real(self.ui, self.fields, &spec, at) {
             self.asks.edit(Edit::Claim(Claim::Threshold { at, direction }));
         }
@@ -260,7 +261,7 @@ impl Sentence<'_> {
     fn quantile(&mut self, p: f64) {
         self.subject();
         self.say(": the ");
-        let spec = Field::word(Id::new("quantile p"), "Quantile");
+        let spec = Field::word(Id::unique("quantile p"), "Quantile");
         if let Some(p) = fields::percent(self.ui, self.fields, &spec, p) {
             self.asks.edit(Edit::Claim(Claim::Quantile { p }));
         }
@@ -270,13 +271,13 @@ impl Sentence<'_> {
     fn deviation(&mut self, epsilon: f64, probability: Option<f64>) {
         self.subject();
         self.say(" from its expectation: more than ");
-        let spec = Field::word(Id::new("epsilon"), "Deviation");
+        let spec = Field::word(Id::unique("epsilon"), "Deviation");
         if let Some(epsilon) = fields::real(self.ui, self.fields, &spec, epsilon) {
             self.asks.edit(Edit::Claim(Claim::Deviation { epsilon, probability }));
         }
         self.unit();
         self.say(" with a chance of at most ");
-        let spec = Field { hint: "any", ..Field::word(Id::new("deviation p"), "Largest chance of deviating") };
+        let spec = Field { hint: "any", ..Field::word(Id::unique("deviation p"), "Largest chance of deviating") };
         if let Some(probability) = fields::optional_real(self.ui, self.fields, &spec, probability) {
             self.asks.edit(Edit::Claim(Claim::Deviation { epsilon, probability }));
         }
@@ -308,7 +309,7 @@ impl Sentence<'_> {
 
     fn tolerance(&mut self) {
         let sd = matches!(self.scenario.claim, Claim::Quantile { .. });
-        let spec = Field::word(Id::new("tolerance"), "Tolerance");
+        let spec = Field::word(Id::unique("tolerance"), "Tolerance");
         let (amount, relative) = match self.scenario.tolerance {
             Tolerance::Absolute(amount) => (amount, false),
             Tolerance::Relative(amount) => (amount, true),
