@@ -1,7 +1,7 @@
 //! The arguments `gaussgap` understands.
 
-use clap::{Parser, Subcommand, ValueEnum};
 use crate::shell::Renderer;
+use clap::{Parser, Subcommand, ValueEnum};
 use std::path::PathBuf;
 
 const EXIT_STATUSES: &str = "\

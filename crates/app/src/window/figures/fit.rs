@@ -116,7 +116,11 @@ pub fn readout(view: &View<'_>) -> String {
     match (facts.kolmogorov, facts.at_z) {
         (Some(distance), Some(z)) => {
             let side = if facts.side == Some(Side::JustBelow) { "just below " } else { "" };
-            format!("Kolmogorov distance {} {side}{}", with_error(distance.value, distance.error), at_words(view, z))
+            format!(
+                "Kolmogorov distance {} {side}{}",
+                with_error(distance.value, distance.error),
+                at_words(view, z)
+            )
         }
         _ => "no normal limit: there is nothing to compare".to_owned(),
     }

@@ -72,7 +72,9 @@ fn status(ui: &mut Ui, now: Circumstances, palette: &Palette, asks: &mut Asks) {
     match now.progress {
         Some(progress) if progress.elapsed.as_millis() > 250 => {
             let doing = if progress.stage == Stage::Planned { "computing" } else { "looking at other n" };
-            ui.label(RichText::new(format!("{doing} … {:.0} %", progress.fraction * 100.0)).color(palette.muted));
+            ui.label(
+                RichText::new(format!("{doing} … {:.0} %", progress.fraction * 100.0)).color(palette.muted),
+            );
             if ui.small_button("Stop").clicked() {
                 asks.command(Command::Stop);
             }
@@ -89,14 +91,20 @@ fn status(ui: &mut Ui, now: Circumstances, palette: &Palette, asks: &mut Asks) {
 
 /// "Safe from n = 312 on (every n up to 10,000 checked)."
 fn safe_from(view: &View<'_>) -> String {
-    let Some(full) = view.full.filter(|_| view.full_is_current) else { return "Safe from n = …".to_owned() };
+    let Some(full) = view.full.filter(|_| view.full_is_current) else {
+        return "Safe from n = …".to_owned();
+    };
     safe_from_words(&full.report.verdict)
 }
 
 fn safe_from_words(verdict: &Verdict) -> String {
     let Some(checked) = &verdict.checked else { return "Safe from: not searched.".to_owned() };
     let to = thousands(checked.to as f64);
-    let how = if checked.every_n { format!("every n up to {to} checked") } else { format!("some n up to {to} checked") };
+    let how = if checked.every_n {
+        format!("every n up to {to} checked")
+    } else {
+        format!("some n up to {to} checked")
+    };
     match verdict.safe_from {
         Some(n) => format!("Safe from n = {} on ({how}).", thousands(n as f64)),
         None => format!("Not safe from any n up to {to} on ({how})."),
@@ -112,7 +120,8 @@ fn cheapest(view: &View<'_>) -> Option<String> {
     let remedies = &full.report.remedies;
     match remedies.iter().find(|remedy| remedy.holds) {
         Some(remedy) => {
-            let actual = remedy.actual.map_or_else(String::new, |a| format!(" ({})", with_error(a.value, a.error)));
+            let actual =
+                remedy.actual.map_or_else(String::new, |a| format!(" ({})", with_error(a.value, a.error)));
             Some(format!("Remedy that holds at this n: {}{actual}.", remedy.name))
         }
         None if remedies.is_empty() => None,
@@ -125,7 +134,7 @@ pub fn method(view: &View<'_>) -> String {
     let report = &view.shown.report;
     let mut words = vec![report.method.detail.clone()];
     if let Some(distance) = report.distance.kolmogorov {
-        words.push(format!("error ≤ {}", shown(distance.error, 1)));
+        words.push(format!("error of the distance ≤ {}", shown(distance.error, 1)));
     }
     if let Some(draws) = report.method.draws {
         words.push(format!("{} draws", thousands(draws as f64)));
@@ -151,7 +160,10 @@ mod tests {
         };
         assert_eq!(safe_from_words(&verdict), "Safe from n = 1312 on (every n up to 10,000 checked).");
         verdict.safe_from = None;
-        assert_eq!(safe_from_words(&verdict), "Not safe from any n up to 10,000 on (every n up to 10,000 checked).");
+        assert_eq!(
+            safe_from_words(&verdict),
+            "Not safe from any n up to 10,000 on (every n up to 10,000 checked)."
+        );
         verdict.checked = None;
         assert_eq!(safe_from_words(&verdict), "Safe from: not searched.");
     }

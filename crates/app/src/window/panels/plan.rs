@@ -15,7 +15,11 @@ use gaussgap_conclusions::scenario::{
 
 /// The claim kinds: the name in files, the words of the sentence, and what each is for.
 const CLAIMS: [(&str, &str, &str); 6] = [
-    ("interval", "report an interval for", "Interval: mean ± z·σ/√n or t·s/√n, coverage and misses on each side"),
+    (
+        "interval",
+        "report an interval for",
+        "Interval: mean ± z·σ/√n or t·s/√n, coverage and misses on each side",
+    ),
     ("test", "test", "Test: size, and power where a shift is planned"),
     ("threshold", "state a chance for", "Threshold: the chance that the statistic stays within a limit"),
     ("quantile", "state a quantile of", "Quantile: a high or low point of the statistic"),
@@ -46,7 +50,10 @@ pub fn show(
         super::finding::mistake(ui, &format!("{label}: {problem}"));
     }
     for problem in problems.iter().filter(|problem| is_about_plan(&problem.pointer)) {
-        super::finding::mistake(ui, &format!("{}: {}", problem.pointer.trim_start_matches('/'), problem.message));
+        super::finding::mistake(
+            ui,
+            &format!("{}: {}", problem.pointer.trim_start_matches('/'), problem.message),
+        );
     }
 }
 
@@ -94,7 +101,9 @@ impl Sentence<'_> {
         self.claim_kind();
         match self.scenario.claim {
             Claim::Interval { level, sides, spread } => self.interval(level, sides, spread),
-            Claim::Test { significance, sides, spread, shift } => self.test(significance, sides, spread, shift),
+            Claim::Test { significance, sides, spread, shift } => {
+                self.test(significance, sides, spread, shift)
+            }
             Claim::Threshold { at, direction } => self.threshold(at, direction),
             Claim::Quantile { p } => self.quantile(p),
             Claim::Deviation { epsilon, probability } => self.deviation(epsilon, probability),
@@ -134,7 +143,9 @@ impl Sentence<'_> {
                 self.say("the ");
                 let words = if self.scenario.statistic == Statistic::Mean { "mean" } else { "sum" };
                 let options = [(Statistic::Mean, "mean"), (Statistic::Sum, "sum")];
-                if let Some(statistic) = choice(self.ui, "Statistic", words, &options, &self.scenario.statistic) {
+                if let Some(statistic) =
+                    choice(self.ui, "Statistic", words, &options, &self.scenario.statistic)
+                {
                     self.asks.edit(Edit::Statistic(statistic));
                 }
                 self.say(" of ");
@@ -144,7 +155,8 @@ impl Sentence<'_> {
             }
             Source::Parts { parts } => {
                 let total = self.scenario.source.total();
-                let kinds = if parts.len() == 1 { "kind".to_owned() } else { format!("{} kinds", parts.len()) };
+                let kinds =
+                    if parts.len() == 1 { "kind".to_owned() } else { format!("{} kinds", parts.len()) };
                 self.say(&format!("the sum of {} ", numbers::thousands(total as f64)));
                 self.quantity(total);
                 self.say(&format!(" of {kinds}"));
@@ -277,7 +289,8 @@ impl Sentence<'_> {
         }
         self.unit();
         self.say(" with a chance of at most ");
-        let spec = Field { hint: "any", ..Field::word(Id::unique("deviation p"), "Largest chance of deviating") };
+        let spec =
+            Field { hint: "any", ..Field::word(Id::unique("deviation p"), "Largest chance of deviating") };
         if let Some(probability) = fields::optional_real(self.ui, self.fields, &spec, probability) {
             self.asks.edit(Edit::Claim(Claim::Deviation { epsilon, probability }));
         }
@@ -291,18 +304,14 @@ impl Sentence<'_> {
     }
 
     fn sides(&mut self, sides: Sides) -> Option<Sides> {
-        let options = [
-            (Sides::Two, "two-sided"),
-            (Sides::Lower, "lower side only"),
-            (Sides::Upper, "upper side only"),
-        ];
+        let options =
+            [(Sides::Two, "two-sided"), (Sides::Lower, "lower side only"), (Sides::Upper, "upper side only")];
         let words = options.iter().find(|(known, _)| *known == sides).map_or("two-sided", |(_, words)| words);
         choice(self.ui, "Sides", words, &options, &sides)
     }
 
     fn spread(&mut self, spread: Spread) -> Option<Spread> {
-        let options =
-            [(Spread::Known, "known beforehand"), (Spread::Estimated, "estimated from the data")];
+        let options = [(Spread::Known, "known beforehand"), (Spread::Estimated, "estimated from the data")];
         let words = options.iter().find(|(known, _)| *known == spread).map_or("known", |(_, words)| words);
         choice(self.ui, "Spread", words, &options, &spread)
     }
@@ -322,8 +331,9 @@ impl Sentence<'_> {
             if scale == 1.0 { numbers::plain(*amount) } else { fields::percent_digits(*amount) }
         };
         let read = |text: &str| {
-            let value = numbers::read_real(text)?;
-            let amount = if text.contains('%') || scale == 1.0 { value } else { value / 100.0 };
+            let plain = text.contains('%') || scale == 1.0;
+            let amount =
+                if plain { numbers::read_real(text)? } else { numbers::read_real(&format!("{text}%"))? };
             if amount > 0.0 { Ok(amount) } else { Err("must be greater than 0".to_owned()) }
         };
         let typed = fields::field(self.ui, self.fields, &spec, &write(&amount), read, write).1;
@@ -365,7 +375,9 @@ fn claim_of(kind: &str, scenario: &Scenario, near: Option<OwnUnits>) -> Claim {
     match kind {
         "interval" => Claim::Interval { level: 0.95, sides: Sides::Two, spread },
         "test" => Claim::Test { significance: 0.05, sides: Sides::Two, spread, shift: None },
-        "threshold" => Claim::Threshold { at: round_to(near.center + 2.0 * near.unit, 3), direction: Direction::AtMost },
+        "threshold" => {
+            Claim::Threshold { at: round_to(near.center + 2.0 * near.unit, 3), direction: Direction::AtMost }
+        }
         "quantile" => Claim::Quantile { p: 0.99 },
         "deviation" => Claim::Deviation { epsilon: round_to(2.0 * near.unit, 2), probability: None },
         _ => Claim::Curve,
@@ -392,7 +404,11 @@ pub fn word_button(ui: &mut Ui, label: &str, words: &str) -> Response {
     let name = format!("{label}: {words}");
     response.widget_info(|| WidgetInfo::labeled(egui::accesskit::Role::Button, true, &name));
     let strong = response.hovered() || response.has_focus();
-    fields::underline(ui, &response, if strong { palette.accent } else { palette.accent.gamma_multiply(0.6) });
+    fields::underline(
+        ui,
+        &response,
+        if strong { palette.accent } else { palette.accent.gamma_multiply(0.6) },
+    );
     response
 }
 
