@@ -363,9 +363,7 @@ impl Workbench {
         let now = self.circumstances();
         match view {
             Some(view) => finding::show(ui, view, now, asks),
-            None => {
-                ui.label(RichText::new("Computing …").font(tokens::bold(tokens::FINDING)));
-            }
+            None => finding::waiting(ui, now, asks),
         }
         if let Some(message) = &self.findings.broken {
             finding::mistake(ui, message);

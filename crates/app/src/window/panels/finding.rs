@@ -63,6 +63,17 @@ pub fn show(ui: &mut Ui, view: &View<'_>, now: Circumstances, asks: &mut Asks) {
     }
 }
 
+/// Draws what there is to say before the first answer.
+pub fn waiting(ui: &mut Ui, now: Circumstances, asks: &mut Asks) {
+    let palette = tokens::palette(ui);
+    ui.horizontal_wrapped(|ui| {
+        ui.spacing_mut().item_spacing.x = 14.0;
+        let words = if now.has_problem { "No finding: this plan cannot be assessed." } else { "Computing …" };
+        ui.label(RichText::new(words).font(tokens::bold(tokens::FINDING)));
+        status(ui, Circumstances { has_problem: false, ..now }, palette, asks);
+    });
+}
+
 /// Where the work stands, or why the finding is an old one.
 fn status(ui: &mut Ui, now: Circumstances, palette: &Palette, asks: &mut Asks) {
     if now.has_problem {
