@@ -157,3 +157,100 @@ fn outputs_that_cannot_be_are_refused_before_the_work() {
     assert_eq!(code(&output), 2);
     assert!(stderr(&output).contains("{}"), "{}", stderr(&output));
 }
+
+#[test]
+fn the_exit_status_is_the_finding() {
+    let plans = Plans::new();
+    let output = plans.run(&["assess", "holds.json"]);
+    assert_eq!(code(&output), 0, "{}", stderr(&output));
+    assert!(stdout(&output).starts_with("holds.json: Ferry queue\n  HOLDS: "), "{}", stdout(&output));
+    assert_eq!(stderr(&output), "");
+    let output = plans.run(&["assess", "fails.json"]);
+    assert_eq!(code(&output), 1);
+    assert!(stdout(&output).contains("  FAILS: Not safe at n = 30"), "{}", stdout(&output));
+    assert!(stdout(&output).contains("Safe from n = 45"), "{}", stdout(&output));
+    let output = plans.run(&["assess", "fails.json", "--set", "/n=100", "--quiet"]);
+    assert_eq!((code(&output), stdout(&output).as_str()), (0, ""));
+}
+
+#[test]
+fn one_report_is_an_object_on_standard_output_and_nothing_else() {
+    let plans = Plans::new();
+    let output = plans.run(&["assess", "fails.json", "--json", "-"]);
+    assert_eq!(code(&output), 1);
+    let report: Value = serde_json::from_str(&stdout(&output)).unwrap();
+    assert_eq!(report["format"], "gaussgap-report/1");
+    assert_eq!(report["program"]["name"], "gaussgap");
+    assert_eq!(report["scenario"]["statistic"], "mean");
+    assert_eq!(report["verdict"]["state"], "fails");
+    // sup |F − Φ| for 30 exponential summands: 0.024291 (facts checked with SciPy, six decimals).
+    let distance = &report["distance"]["kolmogorov"];
+    assert!((distance["value"].as_f64().unwrap() - 0.024_291).abs() < 1e-6, "{distance}");
+    assert_eq!(distance["basis"], "bound");
+}
+
+#[test]
+fn several_scenarios_one_line_each_in_order_and_a_bad_one_stops_nobody() {
+    let plans = Plans::new();
+    let output = plans.run(&["assess", "fails.json", "typo.json", "holds.json", "--json", "-"]);
+    assert_eq!(code(&output), 2);
+    let states: Vec<String> = stdout(&output)
+        .lines()
+        .map(|line| {
+            serde_json::from_str::<Value>(line).unwrap()["verdict"]["state"].as_str().unwrap().to_owned()
+        })
+        .collect();
+    assert_eq!(states, ["fails", "holds"]);
+    assert!(stderr(&output).starts_with("typo.json: /tolerence: "), "{}", stderr(&output));
+    // The shell did not expand the pattern: the program does.
+    let output = plans.run(&["assess", "*s.json", "--json", "all.jsonl", "--png", "./", "--quiet"]);
+    assert_eq!(code(&output), 1, "{}", stderr(&output));
+    assert_eq!(std::fs::read_to_string(plans.file("all.jsonl")).unwrap().lines().count(), 2);
+    for name in ["fails.png", "holds.png"] {
+        assert!(std::fs::read(plans.file(name)).unwrap().starts_with(b"\x89PNG"), "{name}");
+    }
+    assert!(names(plans.path()).iter().all(|name| !name.ends_with(".part")));
+}
+
+#[test]
+fn pages_and_curves_are_written_whole() {
+    let plans = Plans::new();
+    std::fs::write(plans.file("page.svg"), "old").unwrap();
+    let output =
+        plans.run(&["assess", "fails.json", "--svg", "page.svg", "--csv", "curves-{}.csv", "--quiet"]);
+    assert_eq!(code(&output), 1, "{}", stderr(&output));
+    let svg = std::fs::read_to_string(plans.file("page.svg")).unwrap();
+    assert!(svg.starts_with("<svg ") && svg.trim_end().ends_with("</svg>") && svg.contains("Ferry queue"));
+    let curves = std::fs::read_to_string(plans.file("curves-fails.csv")).unwrap();
+    assert!(curves.starts_with("z_sd,mean_units,at_or_below_probability,"), "{}", &curves[..80]);
+    assert!(curves.lines().count() > 100);
+}
+
+#[test]
+fn a_law_without_finite_variance_fails_with_the_reason() {
+    let plans = Plans::new();
+    let set = r#"/law={"kind":"lomax","shape":1.5,"scale":3}"#;
+    let output = plans.run(&["assess", "holds.json", "--set", set, "--json", "-"]);
+    assert_eq!(code(&output), 1, "{}", stderr(&output));
+    let report: Value = serde_json::from_str(&stdout(&output)).unwrap();
+    assert!(report["distance"]["kolmogorov"].is_null());
+    assert!(!report["cautions"].as_array().unwrap().is_empty());
+}
+
+/// A reader that goes away early is no reason to panic.
+#[test]
+fn a_closed_pipe_is_no_panic() {
+    let plans = Plans::new();
+    let mut child = Command::new(env!("CARGO_BIN_EXE_gaussgap"))
+        .args(["assess", "fails.json", "holds.json", "fails.json", "--json", "-"])
+        .current_dir(plans.path())
+        .stdin(Stdio::null())
+        .stdout(Stdio::piped())
+        .stderr(Stdio::piped())
+        .spawn()
+        .unwrap();
+    drop(child.stdout.take());
+    let output = child.wait_with_output().unwrap();
+    assert_eq!(code(&output), 4);
+    assert_eq!(stderr(&output), "");
+}

@@ -5,7 +5,8 @@ use crate::claims::{
 };
 use crate::prepared::Prepared;
 use crate::report::{
-    ClaimFacts, Curve, DistanceFacts, Growth, MethodFacts, Program, REPORT_FORMAT, Report, State, SumFacts, Verdict,
+    ClaimFacts, Curve, DistanceFacts, Growth, MethodFacts, Program, REPORT_FORMAT, Report, State, SumFacts,
+    Verdict,
 };
 use crate::scenario::{Claim, Scenario};
 use crate::words::finding::{NoFigure, because, without_figure};
@@ -24,7 +25,7 @@ pub(crate) fn assess(scenario: &Scenario, effort: Effort, work: &Work) -> Result
     work.set_fraction(0.0);
     let prepared = Prepared::new(scenario).map_err(AssessError::Scenario)?;
     if !prepared.has_variance() {
-        return Ok(no_variance(&prepared, start));
+        return no_variance(&prepared, effort, start, work);
     }
     let spec = prepared.sum_spec(&prepared.planned);
     let sum = build(&spec, &prepared.method(8.0), work).map_err(refused)?;
@@ -54,8 +55,11 @@ pub(crate) fn assess(scenario: &Scenario, effort: Effort, work: &Work) -> Result
         needed.insert("actual".to_owned(), safe_from::needed_n(&prepared, probability, work)?);
         claim.needed_n = Some(needed);
     }
-    let remedies =
-        if effort.remedies { remedies::remedies(&prepared, sum, &claim, &verdict, work)? } else { Vec::new() };
+    let remedies = if effort.remedies {
+        remedies::remedies(&prepared, sum, &claim, &verdict, work)?
+    } else {
+        Vec::new()
+    };
     let rules = if effort.remedies { rules_of_thumb::rules(&prepared, planned_state) } else { Vec::new() };
     work.set_fraction(1.0);
     Ok(Report {
@@ -116,16 +120,17 @@ fn claim_facts(
     let claim = prepared.scenario.claim;
     if is_studentized(&claim) {
         let precision = if effort == Effort::PLANNED_N { 0.25 } else { 0.05 };
-        let budget = StudentizedBudget { draws: prepared.scenario.method.draws, share: CLAIM_SHARE, precision };
-        return evaluate_studentized(prepared, &prepared.laws, &prepared.planned, &budget, work).map_err(|error| {
-            match error {
+        let budget =
+            StudentizedBudget { draws: prepared.scenario.method.draws, share: CLAIM_SHARE, precision };
+        return evaluate_studentized(prepared, &prepared.laws, &prepared.planned, &budget, work).map_err(
+            |error| match error {
                 SumError::Cancelled(cancelled) => AssessError::Cancelled(cancelled),
                 other => AssessError::Scenario(vec![Problem {
                     pointer: "/claim/spread".to_owned(),
                     message: format!("this claim cannot be computed: {other}"),
                 }]),
-            }
-        });
+            },
+        );
     }
     let mut facts = claims::evaluate(prepared, &prepared.planned, sum);
     if let Claim::Deviation { epsilon, .. } = claim {
@@ -157,7 +162,8 @@ fn method_facts(
 ) -> MethodFacts {
     let mut detail = vec![sum.detail()];
     if let Some(misses) = misses {
-        let what = if matches!(prepared.scenario.claim, Claim::Test { .. }) { "the test" } else { "the interval" };
+        let what =
+            if matches!(prepared.scenario.claim, Claim::Test { .. }) { "the test" } else { "the interval" };
         detail.push(format!("{what}: {}", misses.detail));
     }
     if let Some(how) = search.and_then(|search| search.how.as_deref()) {
@@ -174,10 +180,16 @@ fn method_facts(
 }
 
 /// The report on a law without a finite variance: the claim fails, and no figure exists.
-fn no_variance(prepared: &Prepared, start: Instant) -> Report {
+fn no_variance(
+    prepared: &Prepared,
+    effort: Effort,
+    start: Instant,
+    work: &Work,
+) -> Result<Report, AssessError> {
     let scenario = prepared.scenario;
     let claim = claims::without_figure(&scenario.claim, &scenario.tolerance, None);
-    Report {
+    let remedies = if effort.remedies { remedies::without_variance(prepared, work)? } else { Vec::new() };
+    Ok(Report {
         format: REPORT_FORMAT.to_owned(),
         program: program(),
         scenario: report_scenario(scenario),
@@ -191,7 +203,13 @@ fn no_variance(prepared: &Prepared, start: Instant) -> Report {
             draws: None,
             seed: None,
         },
-        distance: DistanceFacts { kolmogorov: None, at_z: None, side: None, leading_term: None, berry_esseen: None },
+        distance: DistanceFacts {
+            kolmogorov: None,
+            at_z: None,
+            side: None,
+            leading_term: None,
+            berry_esseen: None,
+        },
         tails: facts::tails(prepared, None),
         cautions: cautions::cautions(prepared, &claim),
         claim,
@@ -202,11 +220,11 @@ fn no_variance(prepared: &Prepared, start: Instant) -> Report {
             last_failing: None,
             checked: None,
         },
-        remedies: remedies::without_variance(prepared),
+        remedies,
         rules_of_thumb: Vec::new(),
         growth: Growth::default(),
         curve: Curve::default(),
-    }
+    })
 }
 
 /// The moments of a sum without a variance: its mean, where it exists.

@@ -12,7 +12,8 @@ pub(crate) fn cautions(prepared: &Prepared, claim: &ClaimFacts) -> Vec<String> {
     let mut cautions = Vec::new();
     if concerns_safety(scenario) {
         cautions.push(
-            "Where people can be hurt, this does not replace the applicable code or a licensed professional.".to_owned(),
+            "Where people can be hurt, this does not replace the applicable code or a licensed professional."
+                .to_owned(),
         );
     }
     if !prepared.has_variance() {
@@ -28,7 +29,9 @@ pub(crate) fn cautions(prepared: &Prepared, claim: &ClaimFacts) -> Vec<String> {
                 .to_owned(),
         );
     } else if prepared.laws.iter().any(|law| law.moments.excess_kurtosis.is_none()) {
-        cautions.push("The tails are heavy (no fourth moment): a spread estimated from data is unreliable.".to_owned());
+        cautions.push(
+            "The tails are heavy (no fourth moment): a spread estimated from data is unreliable.".to_owned(),
+        );
     }
     cautions.extend(lopsided(scenario, claim));
     if uses_data(scenario) {
@@ -75,9 +78,32 @@ fn uses_data(scenario: &Scenario) -> bool {
 /// Whether words of the scenario suggest that people can be hurt: loads, doses, pressures, strengths.
 fn concerns_safety(scenario: &Scenario) -> bool {
     const WORDS: [&str; 26] = [
-        "load", "loads", "loading", "weight", "weights", "dose", "doses", "dosage", "dosing", "pressure", "pressures",
-        "strength", "strengths", "stress", "stresses", "force", "forces", "torque", "toxic", "toxicity", "radiation",
-        "safety", "stability", "bearing", "voltage", "ballast",
+        "load",
+        "loads",
+        "loading",
+        "weight",
+        "weights",
+        "dose",
+        "doses",
+        "dosage",
+        "dosing",
+        "pressure",
+        "pressures",
+        "strength",
+        "strengths",
+        "stress",
+        "stresses",
+        "force",
+        "forces",
+        "torque",
+        "toxic",
+        "toxicity",
+        "radiation",
+        "safety",
+        "stability",
+        "bearing",
+        "voltage",
+        "ballast",
     ];
     let quantity = scenario.quantity.as_ref();
     let texts = [
@@ -88,8 +114,10 @@ fn concerns_safety(scenario: &Scenario) -> bool {
     let named = texts.into_iter().flatten().any(|text| {
         text.to_lowercase().split(|letter: char| !letter.is_alphabetic()).any(|word| WORDS.contains(&word))
     });
-    const UNITS: [&str; 16] =
-        ["t", "kg", "tonne", "tonnes", "N", "kN", "MN", "Pa", "kPa", "MPa", "bar", "mg", "Gy", "mGy", "Sv", "mSv"];
+    const UNITS: [&str; 16] = [
+        "t", "kg", "tonne", "tonnes", "N", "kN", "MN", "Pa", "kPa", "MPa", "bar", "mg", "Gy", "mGy", "Sv",
+        "mSv",
+    ];
     let unit = quantity.and_then(|quantity| quantity.unit.as_deref());
     // A total of weights is a load; the mean of parcels weighed in kg is not by itself.
     let total = matches!(scenario.source, Source::Parts { .. })

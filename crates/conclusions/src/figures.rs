@@ -22,10 +22,5 @@ pub(crate) fn complement(p: Figure) -> Figure {
     Figure { value: 1.0 - p.value, error: p.error + f64::EPSILON, basis: p.basis }
 }
 
-/// A figure with a larger error.
-pub(crate) fn widened(figure: Figure, by: f64) -> Figure {
-    Figure { error: figure.error + by, ..figure }
-}
-
 /// A probability that is exactly 0.
 pub(crate) const NEVER: Figure = Figure::bound(0.0, 0.0);

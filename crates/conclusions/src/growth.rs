@@ -1,12 +1,16 @@
 //! The distance over n: computed, bounded and predicted, on a logarithmic grid.
 
 use crate::bounds::{berry_esseen, leading_term};
-use crate::exact::build_exact;
+
 use crate::prepared::Prepared;
 use crate::report::Growth;
-use gaussgap_simulation::sum::SumError;
+use gaussgap_simulation::sum::{Method, SumError, build_exact};
 use gaussgap_simulation::work::{Cancelled, Work};
 use rayon::prelude::*;
+use std::time::{Duration, Instant};
+
+/// After this long, no further n is started: the curve then has fewer points.
+const ALLOWED: Duration = Duration::from_secs(3);
 
 /// Values of n per factor of ten.
 const PER_DECADE: f64 = 10.0;
@@ -38,30 +42,67 @@ pub(crate) fn growth(prepared: &Prepared, work: &Work) -> Result<Growth, Cancell
         .into_iter()
         .filter(|n| *n >= prepared.smallest_n())
         .collect::<Vec<_>>();
-    // Large n first: they cost most.
-    let rows = n
-        .par_iter()
-        .rev()
+    let start = Instant::now();
+    let mut rows = spread_out(n, prepared.total())
+        .into_par_iter()
+        .with_max_len(1)
         .map(|n| {
             work.check()?;
-            let Some(counts) = prepared.counts_at(*n) else { return Ok((None, None, None)) };
-            let spec = prepared.sum_spec(&counts);
-            let bound = berry_esseen(&spec).map(|bound| bound.value);
-            match build_exact(&spec, 8.0, work) {
-                Ok(sum) => {
-                    let distance = sum.kolmogorov().kolmogorov.value;
-                    Ok((Some(distance), bound, leading_term(&spec, sum.lattice_span())))
-                }
-                Err(SumError::Cancelled(cancelled)) => Err(cancelled),
-                Err(_) => Ok((None, bound, leading_term(&spec, None))),
+            if start.elapsed() > ALLOWED {
+                return Ok(None);
             }
+            row(prepared, n, work).map(Some)
         })
-        .collect::<Result<Vec<_>, Cancelled>>()?;
-    let mut growth = Growth { n, ..Growth::default() };
-    for (distance, bound, leading) in rows.into_iter().rev() {
-        growth.kolmogorov.push(distance);
-        growth.berry_esseen.push(bound);
-        growth.leading_term.push(leading);
+        .collect::<Result<Vec<_>, Cancelled>>()?
+        .into_iter()
+        .flatten()
+        .collect::<Vec<_>>();
+    rows.sort_by_key(|row| row.n);
+    let mut growth = Growth::default();
+    for row in rows {
+        growth.n.push(row.n);
+        growth.kolmogorov.push(row.distance);
+        growth.berry_esseen.push(row.bound);
+        growth.leading_term.push(row.leading);
     }
     Ok(growth)
+}
+
+/// One point of the curve.
+struct Row {
+    n: u64,
+    distance: Option<f64>,
+    bound: Option<f64>,
+    leading: Option<f64>,
+}
+
+fn row(prepared: &Prepared, n: u64, work: &Work) -> Result<Row, Cancelled> {
+    let empty = Row { n, distance: None, bound: None, leading: None };
+    let Some(counts) = prepared.counts_at(n) else { return Ok(empty) };
+    let spec = prepared.sum_spec(&counts);
+    let bound = berry_esseen(&spec).map(|bound| bound.value);
+    match build_exact(&spec, &Method::default(), work) {
+        Ok(sum) => {
+            let distance = Some(sum.kolmogorov().kolmogorov.value);
+            Ok(Row { n, distance, bound, leading: leading_term(&spec, sum.lattice_span()) })
+        }
+        Err(SumError::Cancelled(cancelled)) => Err(cancelled),
+        Err(_) => Ok(Row { n, distance: None, bound, leading: leading_term(&spec, None) }),
+    }
+}
+
+/// An order in which any beginning covers the whole range: the planned n and the ends, then every eighth, every
+/// fourth, every second, the rest.
+fn spread_out(n: Vec<u64>, planned: u64) -> Vec<u64> {
+    let last = n.len().saturating_sub(1);
+    let rank = |index: usize, n: u64| match index {
+        _ if n == planned || index == 0 || index == last => 0,
+        index if index % 8 == 0 => 1,
+        index if index % 4 == 0 => 2,
+        index if index % 2 == 0 => 3,
+        _ => 4,
+    };
+    let mut ranked = n.iter().enumerate().map(|(index, n)| (rank(index, *n), *n)).collect::<Vec<_>>();
+    ranked.sort_by_key(|(rank, _)| *rank);
+    ranked.into_iter().map(|(_, n)| n).collect()
 }

@@ -4,7 +4,6 @@ mod assess;
 mod bounds;
 mod cautions;
 mod claims;
-mod exact;
 mod facts;
 mod figures;
 mod growth;

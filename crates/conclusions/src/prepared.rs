@@ -46,7 +46,10 @@ impl<'a> Prepared<'a> {
         for request in scenario.data_requests() {
             problems.push(Problem {
                 pointer: request.pointer,
-                message: format!("the values of column {} of {} have not been loaded", request.column, request.path),
+                message: format!(
+                    "the values of column {} of {} have not been loaded",
+                    request.column, request.path
+                ),
             });
         }
         let mut laws = Vec::new();
@@ -68,7 +71,8 @@ impl<'a> Prepared<'a> {
             };
             problems.push(Problem {
                 pointer: pointer.to_owned(),
-                message: "must have some spread: every value is the same, so there is nothing to approximate".to_owned(),
+                message: "must have some spread: every value is the same, so there is nothing to approximate"
+                    .to_owned(),
             });
         }
         if problems.is_empty() { Ok(Self { scenario, laws, planned }) } else { Err(problems) }
@@ -139,7 +143,7 @@ impl<'a> Prepared<'a> {
             (Source::Like { .. }, Statistic::Mean) => moments.n as f64,
             _ => 1.0,
         };
-        Scale { mean: moments.mean, sd: moments.sd, divisor, n: moments.n as f64 }
+        Scale { mean: moments.mean, sd: moments.sd, divisor }
     }
 
     /// How to compute the distribution: the scenario's method, reaching every z the report will ask for.
@@ -174,7 +178,10 @@ fn compile(spec: &LawSpec, pointer: &str) -> Result<Law, Vec<Problem>> {
     spec.compile().map_err(|problems| {
         problems
             .into_iter()
-            .map(|problem| Problem { pointer: format!("{pointer}{}", problem.pointer), message: problem.message })
+            .map(|problem| Problem {
+                pointer: format!("{pointer}{}", problem.pointer),
+                message: problem.message,
+            })
             .collect()
     })
 }
@@ -185,8 +192,6 @@ pub(crate) struct Scale {
     mean: f64,
     sd: f64,
     divisor: f64,
-    /// Number of summands.
-    pub n: f64,
 }
 
 impl Scale {

@@ -98,9 +98,14 @@ fn judge(rule: &Rule, shapes: &[Shape], prepared: &Prepared, state: State) -> Ru
         Source::Groups { .. } => prepared.planned.clone(),
         _ => vec![prepared.total(); shapes.len()],
     };
-    let enough = needs.iter().zip(&sizes).all(|(needs, n)| needs.is_some_and(|needs| *n as f64 >= needs - 1e-9 * needs));
-    let largest = needs.iter().copied().try_fold(0.0_f64, |largest, needs| needs.map(|needs| largest.max(needs)));
-    let n = largest.map(|needs| (needs - 1e-9 * needs).ceil().max(1.0)).filter(|n| *n <= LARGEST_N as f64 * 1e6);
+    let enough = needs
+        .iter()
+        .zip(&sizes)
+        .all(|(needs, n)| needs.is_some_and(|needs| *n as f64 >= needs - 1e-9 * needs));
+    let largest =
+        needs.iter().copied().try_fold(0.0_f64, |largest, needs| needs.map(|needs| largest.max(needs)));
+    let n =
+        largest.map(|needs| (needs - 1e-9 * needs).ceil().max(1.0)).filter(|n| *n <= LARGEST_N as f64 * 1e6);
     RuleOfThumb {
         rule: rule.words.to_owned(),
         source: rule.source.to_owned(),

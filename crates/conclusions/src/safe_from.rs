@@ -11,18 +11,18 @@
 
 use crate::bounds::berry_esseen;
 use crate::claims::{self, StudentizedBudget, evaluate_studentized, is_studentized, state};
-use crate::exact::build_exact;
+
 use crate::prepared::Prepared;
 use crate::report::{Checked, State};
 use crate::scenario::{Claim, Sides, Source, Tolerance};
 use gaussgap_simulation::figure::Basis;
-use gaussgap_simulation::sum::SumError;
+use gaussgap_simulation::sum::{Method, SumError, build_exact};
 use gaussgap_simulation::work::{Cancelled, Work};
 use rayon::prelude::*;
 use std::time::{Duration, Instant};
 
 /// Time the whole search may take.
-const ALLOWED: Duration = Duration::from_secs(7);
+const ALLOWED: Duration = Duration::from_secs(4);
 
 /// At most this many simulated evaluations; the confidence is divided among them.
 const MOST_SIMULATED: u64 = 24;
@@ -74,7 +74,7 @@ pub(crate) fn needed_n(prepared: &Prepared, probability: f64, work: &Work) -> Re
         work.check()?;
         let Some(counts) = prepared.counts_at(n) else { return Ok(Judged { holds: false, exact: true }) };
         let spec = prepared.sum_spec(&counts);
-        match build_exact(&spec, 8.0, work) {
+        match build_exact(&spec, &Method::default(), work) {
             Ok(sum) => {
                 let actual = claims::evaluate(prepared, &counts, sum.as_ref()).actual;
                 let holds = actual.is_some_and(|actual| actual.value + actual.error <= probability);
@@ -107,7 +107,7 @@ fn judge(prepared: &Prepared, n: u64, work: &Work) -> Result<Judged, Cancelled> 
             Err(_) => Ok(Judged { holds: false, exact: false }),
         };
     }
-    match build_exact(&prepared.sum_spec(&counts), 8.0, work) {
+    match build_exact(&prepared.sum_spec(&counts), &Method::default(), work) {
         Ok(sum) => {
             let facts = claims::evaluate(prepared, &counts, sum.as_ref());
             Ok(Judged { holds: state(&facts) == State::Holds, exact: true })
@@ -157,7 +157,8 @@ fn every_n(
 ) -> Result<Found, Cancelled> {
     let (low, up_to) = (prepared.smallest_n(), prepared.scenario.search.up_to);
     let high = proven.map_or(up_to, |proven| proven - 1).min(up_to);
-    let proven_note = proven.map(|proven| format!("from n = {proven} on the Berry–Esseen bound proves the claim"));
+    let proven_note =
+        proven.map(|proven| format!("from n = {proven} on the Berry–Esseen bound proves the claim"));
     if up_to < low {
         let checked = Checked { from: low, to: up_to, every_n: false, which: Some(Vec::new()) };
         return Ok(Found { safe_from: None, last_failing: None, checked, how: None });

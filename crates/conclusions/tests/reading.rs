@@ -64,8 +64,11 @@ fn every_mistake_is_named_at_its_place() {
                 "dependence": {"kind": "without-replacement", "population": 30}}"#,
         ),
     ];
-    let page =
-        documents.iter().map(|(name, text)| format!("-- {name}\n{}", problems(text))).collect::<Vec<_>>().join("\n");
+    let page = documents
+        .iter()
+        .map(|(name, text)| format!("-- {name}\n{}", problems(text)))
+        .collect::<Vec<_>>()
+        .join("\n");
     insta::assert_snapshot!(page);
 }
 
@@ -108,8 +111,10 @@ fn every_kind_of_law_round_trips() {
     for law in laws.as_array().expect("a list") {
         let mut document = smallest();
         document["law"] = law.clone();
-        let scenario = Scenario::from_value(&document).unwrap_or_else(|problems| panic!("{law}: {problems:?}"));
-        let again = Scenario::parse(&scenario.to_json()).unwrap_or_else(|problems| panic!("{law}: {problems:?}"));
+        let scenario =
+            Scenario::from_value(&document).unwrap_or_else(|problems| panic!("{law}: {problems:?}"));
+        let again =
+            Scenario::parse(&scenario.to_json()).unwrap_or_else(|problems| panic!("{law}: {problems:?}"));
         assert_eq!(again, scenario, "{law}");
         // One unknown field is one problem, whatever the kind.
         document["law"]["surprise"] = json!(1);
@@ -121,7 +126,9 @@ fn every_kind_of_law_round_trips() {
 
 #[test]
 fn doubles_survive_writing_and_reading() {
-    for mean in [0.1, 1.0 / 3.0, 5e-324, 1.7976931348623157e308, 123456789.12345679, 1e15, 1e22, 9007199254740993.0] {
+    for mean in
+        [0.1, 1.0 / 3.0, 5e-324, 1.7976931348623157e308, 123456789.12345679, 1e15, 1e22, 9007199254740993.0]
+    {
         let mut scenario = Scenario::from_value(&smallest()).expect("a valid scenario");
         scenario.source = Source::Like { law: LawSpec::Exponential { mean }, n: 3, dependence: None };
         assert_eq!(Scenario::parse(&scenario.to_json()).expect("round trip"), scenario, "{mean}");
@@ -131,8 +138,9 @@ fn doubles_survive_writing_and_reading() {
 #[test]
 fn overrides_set_create_and_complain() {
     let mut document = smallest();
-    let overrides = ["/n=200", "/claim/kind=quantile", "/claim/p=0.99", "/tolerance/relative=0.1", "/title=Two words"]
-        .map(|text| parse_override(text).expect("well-formed"));
+    let overrides =
+        ["/n=200", "/claim/kind=quantile", "/claim/p=0.99", "/tolerance/relative=0.1", "/title=Two words"]
+            .map(|text| parse_override(text).expect("well-formed"));
     apply_overrides(&mut document, &overrides).expect("settable");
     let scenario = Scenario::from_value(&document).expect("a valid scenario");
     assert_eq!(scenario.source.total(), 200);
@@ -165,5 +173,8 @@ fn loaded_data_is_not_written() {
     assert_eq!(scenario.check(), Ok(()));
     assert!(!scenario.to_json().contains("values"), "{}", scenario.to_json());
     let problem = scenario.fill_data("/law", vec![1.0]).expect_err("not a data law");
-    assert_eq!(problem, Problem { pointer: "/law".to_owned(), message: "there is no data law at this place".to_owned() });
+    assert_eq!(
+        problem,
+        Problem { pointer: "/law".to_owned(), message: "there is no data law at this place".to_owned() }
+    );
 }

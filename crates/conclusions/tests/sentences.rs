@@ -69,11 +69,20 @@ fn findings_read_well() {
         (boarding(threshold(Direction::AtMost)), facts(0.934, exact(0.912), 0.01, None), Fails),
         (total(threshold(Direction::AtLeast)), facts(3.2e-5, exact(2.9e-6), 0.001, None), Holds),
         (boarding(threshold(Direction::AtMost)), facts(0.934, simulated(0.924), 0.01, None), Undecided),
-        (boarding(Claim::Deviation { epsilon: 2.0, probability: None }), facts(0.029, exact(0.034), 0.001, None), Fails),
-        (boarding(Claim::Deviation { epsilon: 2.0, probability: Some(0.05) }), facts(0.029, exact(0.0291), 0.001, None), Holds),
+        (
+            boarding(Claim::Deviation { epsilon: 2.0, probability: None }),
+            facts(0.029, exact(0.034), 0.001, None),
+            Fails,
+        ),
+        (
+            boarding(Claim::Deviation { epsilon: 2.0, probability: Some(0.05) }),
+            facts(0.029, exact(0.0291), 0.001, None),
+            Holds,
+        ),
         (scenario("no-show", "cars", 1, Claim::Curve), facts(0.0, exact(0.3), 0.02, None), Fails),
     ];
-    let mut page = cases.iter().map(|(scenario, facts, state)| because(scenario, facts, *state)).collect::<Vec<_>>();
+    let mut page =
+        cases.iter().map(|(scenario, facts, state)| because(scenario, facts, *state)).collect::<Vec<_>>();
     for (state, actual) in [(Holds, 2.35), (Fails, 2.777), (Undecided, 2.42)] {
         let scenario = boarding(Claim::Quantile { p: 0.99 });
         let mut facts = facts(2.326, exact(actual), 0.1, None);
@@ -106,7 +115,8 @@ fn plans_read_well() {
     for claim in claims {
         page.push(plan_sentence(&scenario("boarding time", "s", 40, claim)));
     }
-    for (name, n) in [("on-board spending", 300), ("no-show", 1), ("loss", 12_000), ("delivery", 3), ("", 7)] {
+    for (name, n) in [("on-board spending", 300), ("no-show", 1), ("loss", 12_000), ("delivery", 3), ("", 7)]
+    {
         page.push(plan_sentence(&scenario(name, "qm", n, Claim::Curve)));
     }
     let mut sum = scenario("vehicle weight", "t", 28, Claim::Quantile { p: 0.999 });
@@ -116,7 +126,8 @@ fn plans_read_well() {
     let part = |count| Part { law: law.clone(), count };
     for counts in [vec![60, 40], vec![1], vec![5, 6, 7]] {
         let mut parts = Scenario::new(Source::Parts { parts: counts.into_iter().map(part).collect() });
-        parts.quantity = Some(Quantity { name: Some("vehicle weight".to_owned()), unit: Some("t".to_owned()) });
+        parts.quantity =
+            Some(Quantity { name: Some("vehicle weight".to_owned()), unit: Some("t".to_owned()) });
         parts.claim = Claim::Threshold { at: 95.0, direction: Direction::AtMost };
         page.push(plan_sentence(&parts));
     }

@@ -104,7 +104,10 @@ impl Job {
         };
         // A panic is a defect, but one scenario's defect must not take the others' results away, and its message
         // belongs on one line.
-        std::panic::set_hook(Box::new(|_| {}));
+        std::panic::set_hook(Box::new(|panic| {
+            let place = panic.location().map_or_else(String::new, |place| format!(" at {place}"));
+            let _ = writeln!(io::stderr(), "gaussgap: internal error{place}");
+        }));
         let workers = std::thread::available_parallelism().map_or(2, usize::from);
         in_order(
             self.scenarios.len(),

@@ -1,5 +1,6 @@
 //! Files on their way in and out: scenarios, pilot data beside them, and outputs written whole or not at all.
 
 pub mod column;
+pub mod duplicates;
 pub mod scenario;
 pub mod write;

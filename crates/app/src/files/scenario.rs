@@ -1,6 +1,7 @@
 //! Reading a scenario file and the pilot data beside it, naming every mistake with its file and place.
 
 use super::column::read_column;
+use super::duplicates::duplicates;
 use gaussgap_conclusions::Problem;
 use gaussgap_conclusions::scenario::{Scenario, apply_overrides};
 use serde_json::Value;
@@ -41,6 +42,10 @@ pub fn read_scenario(path: &Path, overrides: &[(String, Value)]) -> Result<Scena
     let text = read_text(path)?;
     let in_document = |problems: Vec<Problem>| ScenarioFileError::in_document(path, &problems);
     let mut document = Scenario::parse_json(&text).map_err(in_document)?;
+    let repeated = duplicates(text.trim_start_matches('\u{feff}'));
+    if !repeated.is_empty() {
+        return Err(in_document(repeated));
+    }
     apply_overrides(&mut document, overrides).map_err(in_document)?;
     let mut scenario = Scenario::from_value(&document).map_err(in_document)?;
     fill_data(&mut scenario, path)?;

@@ -35,8 +35,16 @@ pub(crate) fn berry_esseen(spec: &SumSpec) -> Option<BerryEsseen> {
         let rho = standardized_third(&term.law)?;
         candidates.extend([
             (0.4690 * rho / root_n, 0.4690, "0.4690 ρ/√n, Shevtsova 2013 (like summands)"),
-            (0.3322 * (rho + 0.429) / root_n, 0.3322, "0.3322 (ρ + 0.429)/√n, Shevtsova 2013 (like summands)"),
-            (0.3031 * (rho + 0.646) / root_n, 0.3031, "0.3031 (ρ + 0.646)/√n, Shevtsova 2013 (like summands)"),
+            (
+                0.3322 * (rho + 0.429) / root_n,
+                0.3322,
+                "0.3322 (ρ + 0.429)/√n, Shevtsova 2013 (like summands)",
+            ),
+            (
+                0.3031 * (rho + 0.646) / root_n,
+                0.3031,
+                "0.3031 (ρ + 0.646)/√n, Shevtsova 2013 (like summands)",
+            ),
         ]);
     }
     let ratio = lyapunov_ratio(spec)?;
@@ -45,7 +53,11 @@ pub(crate) fn berry_esseen(spec: &SumSpec) -> Option<BerryEsseen> {
     }
     if ratio <= 0.01 {
         let value = ESSEEN * ratio + 0.3413 * ratio.powf(4.0 / 3.0);
-        candidates.push((value, ESSEEN, "c_E L + 0.3413 L^(4/3) for L ≤ 0.01, Shevtsova 2012 (independent summands)"));
+        candidates.push((
+            value,
+            ESSEEN,
+            "c_E L + 0.3413 L^(4/3) for L ≤ 0.01, Shevtsova 2012 (independent summands)",
+        ));
     }
     let cap = (LARGEST_DISTANCE, LARGEST_DISTANCE, "largest distance of any standardized law to the normal");
     let (value, constant, source) = candidates

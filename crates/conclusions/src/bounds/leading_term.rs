@@ -25,7 +25,10 @@ pub(crate) fn leading_term(spec: &SumSpec, known_span: Option<f64>) -> Option<f6
         return None;
     }
     let variance = widths.iter().map(|(width, count, _)| count * (width / widest).powi(2)).sum::<f64>();
-    let third = widths.iter().map(|(width, count, skewness)| count * (width / widest).powi(3) * skewness).sum::<f64>();
+    let third = widths
+        .iter()
+        .map(|(width, count, skewness)| count * (width / widest).powi(3) * skewness)
+        .sum::<f64>();
     let skewness = third / variance.powf(1.5);
     let span = match (known_span, spec.terms.as_slice()) {
         (Some(span), _) => span,

@@ -17,7 +17,12 @@ use gaussgap_simulation::sum::StandardizedSum;
 use std::collections::BTreeMap;
 
 /// Computes the claim from the law of the standardized sum.
-pub(super) fn evaluate(sum: &dyn StandardizedSum, scale: &Scale, epsilon: f64, tolerance: &Tolerance) -> ClaimFacts {
+pub(super) fn evaluate(
+    sum: &dyn StandardizedSum,
+    scale: &Scale,
+    epsilon: f64,
+    tolerance: &Tolerance,
+) -> ClaimFacts {
     let e = epsilon / scale.sd();
     let rounding = 8.0 * f64::EPSILON * e + scale.z_of(scale.value_of(0.0)).1;
     let low = at_rounded_z(sum.below(-e), sum, e, rounding);
@@ -40,7 +45,11 @@ pub(crate) fn add_guarantees(prepared: &Prepared, epsilon: f64, facts: &mut Clai
 
 /// The n that the normal approximation and every guarantee need for P(|statistic − expectation| > ε) ≤ δ, by
 /// name; `None` where a larger n does not help (a total strays ever farther).
-pub(crate) fn needed_n_of(prepared: &Prepared, epsilon: f64, probability: f64) -> Option<BTreeMap<String, Option<u64>>> {
+pub(crate) fn needed_n_of(
+    prepared: &Prepared,
+    epsilon: f64,
+    probability: f64,
+) -> Option<BTreeMap<String, Option<u64>>> {
     let shrinks = matches!(
         (&prepared.scenario.source, prepared.scenario.statistic),
         (Source::Groups { .. }, _) | (Source::Like { .. }, Statistic::Mean)
@@ -56,7 +65,9 @@ pub(crate) fn needed_n_of(prepared: &Prepared, epsilon: f64, probability: f64) -
     needed.insert("normal".to_owned(), normal);
     for method in METHODS {
         let smallest = smallest_n(prepared.smallest_n(), |n| {
-            sizes(n).and_then(|sizes| guarantee(method.kind, &sizes)).is_some_and(|value| value <= probability)
+            sizes(n)
+                .and_then(|sizes| guarantee(method.kind, &sizes))
+                .is_some_and(|value| value <= probability)
         });
         needed.insert(method.name.to_owned(), smallest);
     }

@@ -104,7 +104,9 @@ impl<'a> Sizes<'a> {
             variance_root = variance_root.hypot(factor * count.sqrt() * law.moments.variance?.sqrt());
             terms.push((law, count, factor));
         }
-        if let (crate::scenario::Source::Groups { .. }, Some(first)) = (&prepared.scenario.source, terms.first_mut()) {
+        if let (crate::scenario::Source::Groups { .. }, Some(first)) =
+            (&prepared.scenario.source, terms.first_mut())
+        {
             first.2 = -first.2;
         }
         if !(variance_root > 0.0 && variance_root.is_finite()) {
@@ -123,10 +125,13 @@ impl<'a> Sizes<'a> {
 
     /// Σ Rᵢ², in units of the sum's variance; `None` for unbounded laws.
     fn squared_ranges(&self) -> Option<f64> {
-        self.terms.iter().map(|(law, count, factor)| {
-            let range = (law.support.1 - law.support.0) * factor;
-            range.is_finite().then_some(count * range * range)
-        }).sum()
+        self.terms
+            .iter()
+            .map(|(law, count, factor)| {
+                let range = (law.support.1 - law.support.0) * factor;
+                range.is_finite().then_some(count * range * range)
+            })
+            .sum()
     }
 
     /// max |Xᵢ − μᵢ|, in units of the sum's sd; `None` for unbounded laws.

@@ -33,7 +33,12 @@ pub(crate) fn critical_value(missing: f64, sides: Sides) -> f64 {
 }
 
 /// Computes the claim from the law of the standardized statistic.
-pub(super) fn evaluate(sum: &dyn StandardizedSum, level: f64, sides: Sides, tolerance: &Tolerance) -> ClaimFacts {
+pub(super) fn evaluate(
+    sum: &dyn StandardizedSum,
+    level: f64,
+    sides: Sides,
+    tolerance: &Tolerance,
+) -> ClaimFacts {
     let c = critical_value(1.0 - level, sides);
     let low = if sides == Sides::Lower { NEVER } else { sum.below(-c) };
     let high = if sides == Sides::Upper { NEVER } else { sum.above(c) };

@@ -18,7 +18,7 @@ use crate::figures::weaker;
 use crate::prepared::{Prepared, Scale};
 use crate::report::{ClaimFacts, State};
 use crate::scenario::{Claim, Spread, Tolerance};
-use gaussgap_simulation::figure::{Basis, Figure};
+use gaussgap_simulation::figure::Figure;
 use gaussgap_simulation::sum::StandardizedSum;
 
 /// Whether a claim rests on a studentized statistic, which the law of the sum alone does not decide.
@@ -110,12 +110,15 @@ pub(crate) fn at_rounded_z(figure: Figure, sum: &dyn StandardizedSum, z: f64, ro
     Figure { error: figure.error + rounding * steepness.min(8.0), ..figure }
 }
 
-/// The nominal probability of a tail with the claim's own rounding, as a figure.
-pub(crate) fn exact_number(value: f64) -> Figure {
-    Figure { value, error: 4.0 * f64::EPSILON * value.abs(), basis: Basis::Bound }
-}
-
 /// The scale of a claim, for rooms that evaluate parts of it again.
 pub(crate) fn scale_of(prepared: &Prepared, sum: &dyn StandardizedSum) -> Scale {
     prepared.scale(&sum.moments())
+}
+
+/// The shift of the standardized statistic that a test plans to detect at the planned size; 0 for other claims.
+pub(crate) fn shift_of(prepared: &Prepared) -> f64 {
+    match prepared.scenario.claim {
+        Claim::Test { shift: Some(shift), .. } => test::shift_in_z(prepared, &prepared.planned, shift),
+        _ => 0.0,
+    }
 }

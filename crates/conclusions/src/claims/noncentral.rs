@@ -34,7 +34,10 @@ mod tests {
         let references: &[(f64, f64, f64, f64)] = include!("../../references/noncentral.in");
         for (degrees, t, delta, expected) in references {
             let found = noncentral_above(*degrees, *t, *delta);
-            assert!((found - expected).abs() < 1e-11, "df {degrees}, t {t}, delta {delta}: {found} {expected}");
+            assert!(
+                (found - expected).abs() < 1e-11,
+                "df {degrees}, t {t}, delta {delta}: {found} {expected}"
+            );
         }
     }
 }

@@ -16,7 +16,12 @@ use gaussgap_simulation::special::normal;
 use gaussgap_simulation::sum::StandardizedSum;
 
 /// Computes the claim from the law of the standardized sum.
-pub(super) fn evaluate(sum: &dyn StandardizedSum, scale: &Scale, p: f64, tolerance: &Tolerance) -> ClaimFacts {
+pub(super) fn evaluate(
+    sum: &dyn StandardizedSum,
+    scale: &Scale,
+    p: f64,
+    tolerance: &Tolerance,
+) -> ClaimFacts {
     let nominal = normal::quantile(p);
     let actual = sum.quantile(p);
     let normal_quantile = scale.value_of(nominal);

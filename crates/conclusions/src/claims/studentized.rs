@@ -101,9 +101,15 @@ fn facts_of(prepared: &Prepared, counts: &[u64], found: &Misses, tail: f64) -> C
             ClaimFacts { actual: Some(rejected), difference, ..facts }
         }
         Claim::Interval { level, sides, .. } => match sides {
-            Sides::Two => {
-                interval::facts(level, sides, Spread::Estimated, found.low, found.high, found.covered, tolerance)
-            }
+            Sides::Two => interval::facts(
+                level,
+                sides,
+                Spread::Estimated,
+                found.low,
+                found.high,
+                found.covered,
+                tolerance,
+            ),
             Sides::Lower => {
                 let covered = complement(found.high);
                 interval::facts(level, sides, Spread::Estimated, NEVER, found.high, covered, tolerance)
@@ -122,7 +128,8 @@ fn facts_of(prepared: &Prepared, counts: &[u64], found: &Misses, tail: f64) -> C
 fn planned_power(prepared: &Prepared, counts: &[u64], shift: f64, tail: f64, sides: Sides) -> Planned {
     let (degrees, delta) = match (&prepared.scenario.source, counts) {
         (Source::Groups { .. }, [n_first, n_second]) => {
-            let variances = prepared.laws.iter().map(|law| law.moments.variance.unwrap_or(0.0)).collect::<Vec<_>>();
+            let variances =
+                prepared.laws.iter().map(|law| law.moments.variance.unwrap_or(0.0)).collect::<Vec<_>>();
             let largest = variances.iter().copied().fold(f64::MIN_POSITIVE, f64::max);
             let first = variances[0] / largest / *n_first as f64;
             let second = variances[1] / largest / *n_second as f64;

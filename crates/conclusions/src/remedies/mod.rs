@@ -1,10 +1,36 @@
 //! Remedies: what else could be done at the planned n, each with its actual figure, the cheapest first.
+//!
+//! A remedy's figure is computed the way the claim's own is: the real coverage or size of a corrected interval or
+//! test; for a claim about one number (threshold, quantile, deviation) the true number, with what the remedy gives
+//! in its note; for the whole curve the distance that is left.
 
-use crate::claims::state;
+mod allocation;
+mod capping;
+mod critical;
+mod curve;
+mod numbers;
+mod proportion;
+mod skewness;
+
+use crate::claims::{self, StudentizedBudget, evaluate_studentized, is_studentized, state};
+
 use crate::prepared::Prepared;
 use crate::report::{ClaimFacts, Remedy, State, Verdict};
-use gaussgap_simulation::sum::StandardizedSum;
+use crate::scenario::{Claim, Source};
+use crate::words::numbers::whole;
+use gaussgap_simulation::figure::Figure;
+use gaussgap_simulation::law::Law;
+use gaussgap_simulation::sum::{Method, StandardizedSum, SumError, build_exact};
 use gaussgap_simulation::work::{Cancelled, Work};
+
+/// Share of the allowed probability of error spent on all simulated remedies together.
+const REMEDY_SHARE: f64 = 0.1;
+
+/// At most this many simulated remedies; the share is divided among them.
+const MOST_SIMULATED: u32 = 8;
+
+/// Simulated summands of one remedy.
+const SUMMANDS: u64 = 60_000_000;
 
 /// Every remedy for the claim, the cheapest for the user first: those that change only the arithmetic, then those
 /// that change the plan, then those that change what is estimated.
@@ -15,12 +41,79 @@ pub(crate) fn remedies(
     verdict: &Verdict,
     work: &Work,
 ) -> Result<Vec<Remedy>, Cancelled> {
-    let _ = (prepared, sum, claim, verdict, work, state(claim) == State::Holds);
-    Ok(Vec::new())
+    let mut found = Vec::new();
+    match prepared.scenario.claim {
+        Claim::Curve => found.extend(curve::remedies(prepared, sum)),
+        Claim::Threshold { .. } | Claim::Deviation { .. } | Claim::Quantile { .. } => {
+            found.extend(numbers::remedies(prepared, sum, claim));
+        }
+        Claim::Interval { .. } | Claim::Test { .. } => {
+            if !is_studentized(&prepared.scenario.claim) {
+                found.extend(critical::remedies(prepared, sum, claim));
+            }
+            found.extend(proportion::remedies(prepared, claim));
+            found.extend(skewness::remedies(prepared, claim, work)?);
+        }
+    }
+    work.check()?;
+    found.extend(allocation::remedy(prepared, work)?);
+    found.extend(more(prepared, verdict, work)?);
+    found.extend(capping::remedies(prepared, work)?);
+    Ok(found)
 }
 
-/// What can be done about a law without a finite variance.
-pub(crate) fn without_variance(prepared: &Prepared) -> Vec<Remedy> {
-    let _ = prepared;
-    Vec::new()
+/// What can be done about a law without a finite variance: cap it.
+pub(crate) fn without_variance(prepared: &Prepared, work: &Work) -> Result<Vec<Remedy>, Cancelled> {
+    capping::remedies(prepared, work)
+}
+
+/// A remedy whose figure is the claim's compared number for a changed plan.
+fn from_facts(name: String, facts: &ClaimFacts, note: String) -> Remedy {
+    Remedy { name, actual: facts.actual, holds: state(facts) == State::Holds, note }
+}
+
+/// A remedy whose figure is to stay near a nominal number.
+fn near(name: &str, actual: Figure, nominal: f64, allowed: f64, note: String) -> Remedy {
+    let holds = (actual.value - nominal).abs() + actual.error <= allowed;
+    Remedy { name: name.to_owned(), actual: Some(actual), holds, note }
+}
+
+/// The claim computed for other laws or other counts; `None` where no route reaches it.
+fn claim_with(
+    prepared: &Prepared,
+    laws: &[Law],
+    counts: &[u64],
+    work: &Work,
+) -> Result<Option<ClaimFacts>, Cancelled> {
+    let changed = Prepared { scenario: prepared.scenario, laws: laws.to_vec(), planned: counts.to_vec() };
+    let result = if is_studentized(&prepared.scenario.claim) {
+        let n = counts.iter().sum::<u64>().max(1);
+        let budget = StudentizedBudget {
+            draws: prepared.scenario.method.draws.min((SUMMANDS / n).max(2000)),
+            share: REMEDY_SHARE / f64::from(MOST_SIMULATED),
+            precision: 0.2,
+        };
+        evaluate_studentized(&changed, laws, counts, &budget, work).map(|(facts, _)| facts)
+    } else {
+        build_exact(&changed.sum_spec(counts), &Method::default(), work)
+            .map(|sum| claims::evaluate(&changed, counts, sum.as_ref()))
+    };
+    match result {
+        Ok(facts) => Ok(Some(facts)),
+        Err(SumError::Cancelled(cancelled)) => Err(cancelled),
+        Err(_) => Ok(None),
+    }
+}
+
+/// Simply more: the smallest n from which on the claim holds.
+fn more(prepared: &Prepared, verdict: &Verdict, work: &Work) -> Result<Option<Remedy>, Cancelled> {
+    let Some(safe) = verdict.safe_from.filter(|safe| *safe > prepared.total()) else { return Ok(None) };
+    let Some(counts) = prepared.counts_at(safe) else { return Ok(None) };
+    let Some(facts) = claim_with(prepared, &prepared.laws, &counts, work)? else { return Ok(None) };
+    let what = match prepared.scenario.source {
+        Source::Like { .. } => format!("take n = {}", whole(safe)),
+        _ => format!("take {} in all, in the same proportions", whole(safe)),
+    };
+    let note = format!("{} more than planned", whole(safe - prepared.total()));
+    Ok(Some(from_facts(what, &facts, note)))
 }

@@ -44,9 +44,10 @@ impl Scenario {
         });
         match loaded {
             None => Ok(()),
-            Some(_) => {
-                Err(Problem { pointer: pointer.to_owned(), message: "there is no data law at this place".to_owned() })
-            }
+            Some(_) => Err(Problem {
+                pointer: pointer.to_owned(),
+                message: "there is no data law at this place".to_owned(),
+            }),
         }
     }
 }

@@ -1,7 +1,8 @@
 //! What a scenario says where its author said nothing, and which of its parts contradict each other.
 
 use super::{
-    Claim, Dependence, MethodSpec, SCENARIO_FORMAT, Scenario, Search, Sides, Source, Spread, Statistic, Tolerance,
+    Claim, Dependence, MethodSpec, SCENARIO_FORMAT, Scenario, Search, Sides, Source, Spread, Statistic,
+    Tolerance,
 };
 use crate::Problem;
 use gaussgap_simulation::sum::{Method, RouteChoice};
@@ -12,7 +13,12 @@ pub const DEFAULT_PROBE_Z: [f64; 9] = [-4.0, -3.0, -2.0, -1.0, 0.0, 1.0, 2.0, 3.
 impl Default for MethodSpec {
     fn default() -> Self {
         let method = Method::default();
-        Self { route: RouteChoice::Auto, draws: method.draws, seed: method.seed, confidence: method.confidence }
+        Self {
+            route: RouteChoice::Auto,
+            draws: method.draws,
+            seed: method.seed,
+            confidence: method.confidence,
+        }
     }
 }
 
@@ -119,14 +125,20 @@ impl Scenario {
             problems.push(Problem { pointer: pointer.to_owned(), message });
         };
         if matches!((self.claim, self.tolerance), (Claim::Curve, Tolerance::Relative(_))) {
-            push("/tolerance", "must be absolute for the claim \"curve\", whose nominal distance is 0".to_owned());
+            push(
+                "/tolerance",
+                "must be absolute for the claim \"curve\", whose nominal distance is 0".to_owned(),
+            );
         }
         match (&self.source, self.statistic) {
             (Source::Parts { .. }, Statistic::Mean) => {
                 push("/statistic", "must be \"sum\" for unlike \"parts\" (got \"mean\")".to_owned());
             }
             (Source::Groups { .. }, Statistic::Sum) => {
-                push("/statistic", "must be \"mean\" for \"groups\", whose means are compared (got \"sum\")".to_owned());
+                push(
+                    "/statistic",
+                    "must be \"mean\" for \"groups\", whose means are compared (got \"sum\")".to_owned(),
+                );
             }
             _ => {}
         }
@@ -135,17 +147,23 @@ impl Scenario {
         }
         // With an estimated spread the critical value must be positive: a one-sided limit above the middle.
         match self.claim {
-            Claim::Interval { level, sides, spread: Spread::Estimated } if sides != Sides::Two && level <= 0.5 => {
+            Claim::Interval { level, sides, spread: Spread::Estimated }
+                if sides != Sides::Two && level <= 0.5 =>
+            {
                 push("/claim/level", format!("must be greater than 0.5 for a one-sided limit (got {level})"));
             }
             Claim::Test { significance, sides, spread: Spread::Estimated, .. }
                 if sides != Sides::Two && significance >= 0.5 =>
             {
-                push("/claim/significance", format!("must be less than 0.5 for a one-sided test (got {significance})"));
+                push(
+                    "/claim/significance",
+                    format!("must be less than 0.5 for a one-sided test (got {significance})"),
+                );
             }
             _ => {}
         }
-        if let Source::Like { n, dependence: Some(Dependence::WithoutReplacement { population }), .. } = &self.source
+        if let Source::Like { n, dependence: Some(Dependence::WithoutReplacement { population }), .. } =
+            &self.source
             && population <= n
         {
             push("/dependence/population", format!("must be greater than n = {n} (got {population})"));

@@ -50,8 +50,10 @@ impl<'a> Fields<'a> {
     pub fn only(&self, known: &[&str]) {
         for name in self.members.keys() {
             if !known.contains(&name.as_str()) {
-                self.problems
-                    .push(self.at(name), format!("unknown field \"{name}\" (expected one of {})", known.join(", ")));
+                self.problems.push(
+                    self.at(name),
+                    format!("unknown field \"{name}\" (expected one of {})", known.join(", ")),
+                );
             }
         }
     }
@@ -118,7 +120,12 @@ impl<'a> Fields<'a> {
     }
 
     /// An optional number that must satisfy a condition.
-    pub fn optional_number_where(&self, name: &str, condition: impl Fn(f64) -> bool, must: &str) -> Option<f64> {
+    pub fn optional_number_where(
+        &self,
+        name: &str,
+        condition: impl Fn(f64) -> bool,
+        must: &str,
+    ) -> Option<f64> {
         self.checked(name, self.optional_number(name)?, condition, must)
     }
 
@@ -146,7 +153,8 @@ impl<'a> Fields<'a> {
         let value = self.get(name)?;
         let Some(number) = finite(value) else { return self.wrong(name, "a whole number", value) };
         let whole = value.as_u64().or_else(|| {
-            (number.fract() == 0.0 && (0.0..=9_007_199_254_740_992.0).contains(&number)).then_some(number as u64)
+            (number.fract() == 0.0 && (0.0..=9_007_199_254_740_992.0).contains(&number))
+                .then_some(number as u64)
         });
         match whole {
             Some(count) if (low..=high).contains(&count) => Some(count),

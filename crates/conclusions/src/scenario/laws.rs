@@ -216,7 +216,10 @@ fn read_kind(name: &str, fields: &Fields, depth: usize) -> Option<LawSpec> {
             Some(LawSpec::Compound { count: count?, each: each? })
         }
         unknown => {
-            fields.complain("kind", format!("unknown law \"{unknown}\" (expected one of {})", KINDS.join(", ")));
+            fields.complain(
+                "kind",
+                format!("unknown law \"{unknown}\" (expected one of {})", KINDS.join(", ")),
+            );
             None
         }
     }
@@ -242,12 +245,20 @@ fn read_lognormal(fields: &Fields) -> Option<LawSpec> {
     let logs = fields.has("log_mean") || fields.has("log_sd");
     let plain = fields.has("mean") || fields.has("sd");
     if logs && plain {
-        fields.problems().push(fields.pointer(), "give either \"log_mean\" and \"log_sd\" or \"mean\" and \"sd\", not both");
+        fields.problems().push(
+            fields.pointer(),
+            "give either \"log_mean\" and \"log_sd\" or \"mean\" and \"sd\", not both",
+        );
         return None;
     }
     if logs {
         let (log_mean, log_sd) = (fields.number("log_mean"), fields.number("log_sd"));
-        return Some(LawSpec::Lognormal { log_mean: Some(log_mean?), log_sd: Some(log_sd?), mean: None, sd: None });
+        return Some(LawSpec::Lognormal {
+            log_mean: Some(log_mean?),
+            log_sd: Some(log_sd?),
+            mean: None,
+            sd: None,
+        });
     }
     let (mean, sd) = (fields.number("mean"), fields.number("sd"));
     Some(LawSpec::Lognormal { log_mean: None, log_sd: None, mean: Some(mean?), sd: Some(sd?) })
@@ -279,7 +290,9 @@ fn read_data(fields: &Fields) -> Option<LawSpec> {
     let tail = fields.get("tail").and_then(|value| read_tail(value, fields));
     match (fields.has("values"), fields.has("path") || fields.has("column")) {
         (true, true) => {
-            fields.problems().push(fields.pointer(), "give either \"values\" or \"path\" and \"column\", not both");
+            fields
+                .problems()
+                .push(fields.pointer(), "give either \"values\" or \"path\" and \"column\", not both");
             None
         }
         (false, false) => {

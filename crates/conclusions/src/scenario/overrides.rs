@@ -47,7 +47,11 @@ fn set(document: &mut Value, pointer: &str, value: Value) -> Result<(), String> 
                     .and_then(|index| entries.get_mut(index))
                     .ok_or_else(|| format!("there is no entry \"{step}\" in a list of {length}"))?
             }
-            _ => return Err(format!("cannot set \"{step}\" inside a value that is neither an object nor a list")),
+            _ => {
+                return Err(format!(
+                    "cannot set \"{step}\" inside a value that is neither an object nor a list"
+                ));
+            }
         };
     }
     *place = value;

@@ -3,8 +3,8 @@
 use super::fields::{Fields, Problems, describe};
 use super::laws::read_law;
 use super::{
-    Claim, Dependence, Direction, Group, MethodSpec, Part, Quantity, SCENARIO_FORMAT, Scenario, Search, Sides, Source,
-    Spread, Statistic, Tolerance,
+    Claim, Dependence, Direction, Group, MethodSpec, Part, Quantity, SCENARIO_FORMAT, Scenario, Search,
+    Sides, Source, Spread, Statistic, Tolerance,
 };
 use crate::Problem;
 use gaussgap_simulation::sum::RouteChoice;
@@ -17,8 +17,21 @@ pub const LARGEST_N: u64 = 1_000_000_000;
 const MOST_PROBES: usize = 1000;
 
 const MEMBERS: &[&str] = &[
-    "format", "title", "notes", "quantity", "law", "n", "parts", "groups", "dependence", "statistic", "claim",
-    "tolerance", "method", "probe_z", "search",
+    "format",
+    "title",
+    "notes",
+    "quantity",
+    "law",
+    "n",
+    "parts",
+    "groups",
+    "dependence",
+    "statistic",
+    "claim",
+    "tolerance",
+    "method",
+    "probe_z",
+    "search",
 ];
 
 impl Scenario {
@@ -80,7 +93,8 @@ fn read_scenario(value: &Value, problems: &Problems) -> Option<Scenario> {
     if let Some(probes) = &probe_z
         && probes.len() > MOST_PROBES
     {
-        fields.complain("probe_z", format!("must hold at most {MOST_PROBES} values (found {})", probes.len()));
+        fields
+            .complain("probe_z", format!("must hold at most {MOST_PROBES} values (found {})", probes.len()));
     }
     let search = fields.get("search").and_then(|value| {
         let search = Fields::open(value, &fields.at("search"), problems)?;
@@ -122,7 +136,9 @@ fn read_source(fields: &Fields) -> Option<Source> {
         }
         several => {
             let names = several.iter().map(|name| format!("\"{name}\"")).collect::<Vec<_>>().join(" and ");
-            fields.problems().push("", format!("give exactly one of \"law\", \"parts\", \"groups\" (found {names})"));
+            fields
+                .problems()
+                .push("", format!("give exactly one of \"law\", \"parts\", \"groups\" (found {names})"));
             None
         }
     }
@@ -242,7 +258,8 @@ fn read_claim(value: &Value, fields: &Fields) -> Option<Claim> {
         }
         Some("interval") => {
             claim.only(&["kind", "level", "sides", "spread"]);
-            let (level, sides, spread) = (claim.probability("level"), read_sides(&claim), read_spread(&claim));
+            let (level, sides, spread) =
+                (claim.probability("level"), read_sides(&claim), read_spread(&claim));
             Some(Claim::Interval { level: level?, sides: sides?, spread: spread? })
         }
         Some("test") => {
@@ -266,8 +283,11 @@ fn read_claim(value: &Value, fields: &Fields) -> Option<Claim> {
         Some("deviation") => {
             claim.only(&["kind", "epsilon", "probability"]);
             let epsilon = claim.number_where("epsilon", |epsilon| epsilon > 0.0, "be greater than 0");
-            let probability =
-                claim.optional_number_where("probability", |p| p > 0.0 && p < 1.0, "lie strictly between 0 and 1");
+            let probability = claim.optional_number_where(
+                "probability",
+                |p| p > 0.0 && p < 1.0,
+                "lie strictly between 0 and 1",
+            );
             Some(Claim::Deviation { epsilon: epsilon?, probability })
         }
         _ => {
@@ -315,8 +335,11 @@ fn read_method(value: &Value, fields: &Fields) -> Option<MethodSpec> {
     let route = if method.has("route") { method.word("route", &routes) } else { None };
     let draws = method.optional_count("draws", 1000, 1_000_000_000_000);
     let seed = method.optional_count("seed", 0, u64::MAX);
-    let confidence =
-        method.optional_number_where("confidence", |c| (0.5..1.0).contains(&c), "be at least 0.5 and less than 1");
+    let confidence = method.optional_number_where(
+        "confidence",
+        |c| (0.5..1.0).contains(&c),
+        "be at least 0.5 and less than 1",
+    );
     Some(MethodSpec {
         route: route.unwrap_or(default.route),
         draws: draws.unwrap_or(default.draws),

@@ -19,7 +19,10 @@ impl Scenario {
 }
 
 /// Serializes a source without the values that were loaded from data files.
-pub(super) fn source_without_loaded_values<S: Serializer>(source: &Source, serializer: S) -> Result<S::Ok, S::Error> {
+pub(super) fn source_without_loaded_values<S: Serializer>(
+    source: &Source,
+    serializer: S,
+) -> Result<S::Ok, S::Error> {
     if !has_loaded_values(source) {
         return source.serialize(serializer);
     }

@@ -95,7 +95,9 @@ impl View<'_> {
         let (nominal, allowed) = (self.facts.nominal, self.facts.allowed);
         match self.state {
             State::Holds => format!(", within {} of the {promised}", points(allowed)),
-            State::Undecided => format!(", too close to the allowed limit of {} to tell", self.nearest_limit()),
+            State::Undecided => {
+                format!(", too close to the allowed limit of {} to tell", self.nearest_limit())
+            }
             State::Fails if self.actual.value < nominal => {
                 format!(", less than the {} that would be allowed", percent(nominal - allowed))
             }
@@ -191,12 +193,16 @@ impl View<'_> {
         match shift {
             None => {
                 let ending = self.against_allowed(&format!("promised {level}"));
-                format!("{article} {level} {sides} test really raises a false alarm {actual} of the time{ending}")
+                format!(
+                    "{article} {level} {sides} test really raises a false alarm {actual} of the time{ending}"
+                )
             }
             Some(_) => {
                 let planned = chance(self.facts.nominal, self.decimals());
                 let ending = self.against_allowed(&format!("planned {planned}"));
-                format!("{article} {level} {sides} test really detects the planned shift {actual} of the time{ending}")
+                format!(
+                    "{article} {level} {sides} test really detects the planned shift {actual} of the time{ending}"
+                )
             }
         }
     }
@@ -211,7 +217,9 @@ impl View<'_> {
             State::Fails => format!("{event} is {actual}, not the {normal} that the normal curve gives"),
             State::Holds if actual == normal => format!("{event} is {actual}, as the normal curve says"),
             State::Holds => {
-                format!("{event} is {actual} and the normal curve gives {normal}, within the allowed {allowed}")
+                format!(
+                    "{event} is {actual} and the normal curve gives {normal}, within the allowed {allowed}"
+                )
             }
             State::Undecided => format!(
                 "{event} is {actual} and the normal curve gives {normal}, too close to the allowed {allowed} to tell"
@@ -245,22 +253,31 @@ impl View<'_> {
         // Enough digits to tell the two apart.
         let scale = actual.value.abs().max(normal.abs());
         let gap = (actual.value - normal).abs();
-        let digits = if gap > 0.0 { ((scale / gap).log10().ceil() + 2.0).clamp(3.0, 8.0) as usize } else { 4 };
+        let digits =
+            if gap > 0.0 { ((scale / gap).log10().ceil() + 2.0).clamp(3.0, 8.0) as usize } else { 4 };
         let show = |value: f64| text_with_unit(self.scenario, &number_to(value, digits));
         let error = if actual.basis == Basis::Confidence {
             format!(" (± {})", with_unit(self.scenario, actual.error))
         } else {
             String::new()
         };
-        let start =
-            format!("the {} quantile of {} is {}{error}", percent(p), statistic(self.scenario), show(actual.value));
+        let start = format!(
+            "the {} quantile of {} is {}{error}",
+            percent(p),
+            statistic(self.scenario),
+            show(actual.value)
+        );
         let normal = show(normal);
         let allowed = tolerance(self.scenario);
         match self.state {
             State::Fails => format!("{start}, not the {normal} that the normal curve gives, {apart} away"),
-            State::Holds => format!("{start} and the normal curve gives {normal}, within the allowed {allowed}"),
+            State::Holds => {
+                format!("{start} and the normal curve gives {normal}, within the allowed {allowed}")
+            }
             State::Undecided => {
-                format!("{start} and the normal curve gives {normal}, too close to the allowed {allowed} to tell")
+                format!(
+                    "{start} and the normal curve gives {normal}, too close to the allowed {allowed} to tell"
+                )
             }
         }
     }

@@ -12,9 +12,13 @@ pub fn describe_law(law: &LawSpec) -> String {
         LawSpec::Poisson { rate } => format!("Poisson (rate {})", exact(*rate)),
         LawSpec::Geometric { p } => format!("geometric (p {})", exact(*p)),
         LawSpec::NegativeBinomial { size, p } => with("negative binomial", &[("size", *size), ("p", *p)]),
-        LawSpec::DiscreteUniform { low, high } => format!("whole numbers from {low} to {high}, equally likely"),
+        LawSpec::DiscreteUniform { low, high } => {
+            format!("whole numbers from {low} to {high}, equally likely")
+        }
         LawSpec::Table { values, .. } => format!("table of {} values", whole(values.len() as u64)),
-        LawSpec::Data { values, path, column, tail } => data(values.as_deref(), path.as_deref(), column.as_deref(), tail),
+        LawSpec::Data { values, path, column, tail } => {
+            data(values.as_deref(), path.as_deref(), column.as_deref(), tail)
+        }
         LawSpec::Histogram { weights, .. } => format!("histogram of {} bins", whole(weights.len() as u64)),
         LawSpec::Normal { mean, sd } => with("normal", &[("mean", *mean), ("sd", *sd)]),
         LawSpec::Uniform { low, high } => format!("uniform from {} to {}", exact(*low), exact(*high)),
@@ -49,7 +53,9 @@ pub fn describe_law(law: &LawSpec) -> String {
             given.extend(scale.map(|scale| ("scale", scale)));
             with("Student t", &given)
         }
-        LawSpec::InverseGaussian { mean, shape } => with("inverse Gaussian", &[("mean", *mean), ("shape", *shape)]),
+        LawSpec::InverseGaussian { mean, shape } => {
+            with("inverse Gaussian", &[("mean", *mean), ("shape", *shape)])
+        }
         LawSpec::Formula { density, low, high } => {
             format!("density {} from {} to {}", shortened(density, 40), exact(*low), exact(*high))
         }
@@ -57,7 +63,9 @@ pub fn describe_law(law: &LawSpec) -> String {
             let total = parts.iter().map(|part| part.weight).sum::<f64>();
             let described = parts
                 .iter()
-                .map(|part| format!("{} {}", percent(round_share(part.weight / total)), describe_law(&part.law)))
+                .map(|part| {
+                    format!("{} {}", percent(round_share(part.weight / total)), describe_law(&part.law))
+                })
                 .collect::<Vec<_>>();
             match described.as_slice() {
                 [one] => one.clone(),
@@ -71,7 +79,9 @@ pub fn describe_law(law: &LawSpec) -> String {
             (false, true) => format!("{} plus {}", grouped(law), exact(*add)),
             (false, false) => format!("{} plus {} times {}", exact(*add), exact(*multiply), grouped(law)),
         },
-        LawSpec::Cap { law, low, high } => format!("{}, capped {}", describe_law(law), limits(*low, *high, "at")),
+        LawSpec::Cap { law, low, high } => {
+            format!("{}, capped {}", describe_law(law), limits(*low, *high, "at"))
+        }
         LawSpec::Restrict { law, low, high } => {
             format!("{}, restricted to {}", describe_law(law), bounds(*low, *high))
         }
@@ -83,7 +93,8 @@ pub fn describe_law(law: &LawSpec) -> String {
 }
 
 fn with(name: &str, parameters: &[(&str, f64)]) -> String {
-    let listed = parameters.iter().map(|(name, value)| format!("{name} {}", exact(*value))).collect::<Vec<_>>();
+    let listed =
+        parameters.iter().map(|(name, value)| format!("{name} {}", exact(*value))).collect::<Vec<_>>();
     format!("{name} ({})", listed.join(", "))
 }
 

@@ -12,8 +12,8 @@ pub fn singular(scenario: &Scenario) -> String {
 /// Whether a name is a mass noun, which takes no plural: `on-board spending`.
 fn is_mass(name: &str) -> bool {
     const MASS: [&str; 12] = [
-        "spending", "waiting", "handling", "rainfall", "weather", "revenue", "income", "traffic", "money", "wear",
-        "damage", "noise",
+        "spending", "waiting", "handling", "rainfall", "weather", "revenue", "income", "traffic", "money",
+        "wear", "damage", "noise",
     ];
     name.rsplit([' ', '-']).next().is_some_and(|last| MASS.contains(&last.to_lowercase().as_str()))
 }

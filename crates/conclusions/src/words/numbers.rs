@@ -58,7 +58,11 @@ pub fn about_points(difference: f64) -> String {
 /// and than a tolerance makes worth telling.
 pub fn percent_decimals(difference: f64, error: f64, allowed: f64) -> usize {
     let places = |size: f64| {
-        if size > 0.0 && size.is_finite() { (1.0 - (100.0 * size).log10().floor()).clamp(0.0, 9.0) } else { 9.0 }
+        if size > 0.0 && size.is_finite() {
+            (1.0 - (100.0 * size).log10().floor()).clamp(0.0, 9.0)
+        } else {
+            9.0
+        }
     };
     places(difference.abs()).min(places(error)).min(places(allowed) + 1.0).clamp(1.0, 4.0) as usize
 }
@@ -92,13 +96,25 @@ fn one_in(odds: f64) -> String {
 
 /// How many times as often: `twice`, `three times`, `2.6 times`, `14 times`.
 pub fn times(ratio: f64) -> String {
-    const WORDS: [&str; 8] =
-        ["twice", "three times", "four times", "five times", "six times", "seven times", "eight times", "nine times"];
+    const WORDS: [&str; 8] = [
+        "twice",
+        "three times",
+        "four times",
+        "five times",
+        "six times",
+        "seven times",
+        "eight times",
+        "nine times",
+    ];
     let near = ratio.round();
     if (2.0..=9.0).contains(&near) && (ratio - near).abs() < 0.25 {
         return WORDS[near as usize - 2].to_owned();
     }
-    if ratio < 9.5 { format!("{} times", number_to(ratio, 2)) } else { format!("{} times", number_to(ratio.round(), 2)) }
+    if ratio < 9.5 {
+        format!("{} times", number_to(ratio, 2))
+    } else {
+        format!("{} times", number_to(ratio.round(), 2))
+    }
 }
 
 /// Drops trailing zeros behind a decimal point.
@@ -108,7 +124,8 @@ fn trimmed(text: &str) -> &str {
 
 fn with_commas(text: &str) -> String {
     let (sign, rest) = text.strip_prefix('-').map_or(("", text), |rest| ("-", rest));
-    let (integer, fraction) = rest.split_once('.').map_or((rest, None), |(integer, fraction)| (integer, Some(fraction)));
+    let (integer, fraction) =
+        rest.split_once('.').map_or((rest, None), |(integer, fraction)| (integer, Some(fraction)));
     let mut grouped = String::new();
     for (index, digit) in integer.chars().enumerate() {
         if index > 0 && (integer.len() - index).is_multiple_of(3) {

@@ -60,7 +60,10 @@ pub fn plan_sentence(scenario: &Scenario) -> String {
             let limit = probability
                 .map(|probability| format!(", which is to stay at or below {}", percent(probability)))
                 .unwrap_or_default();
-            format!("I will state the chance that {what} strays more than {epsilon} from its expectation{limit}; {}", off("it"))
+            format!(
+                "I will state the chance that {what} strays more than {epsilon} from its expectation{limit}; {}",
+                off("it")
+            )
         }
     };
     format!("{main}{}.", dependence(scenario))
@@ -79,7 +82,11 @@ pub(crate) fn tolerance(scenario: &Scenario) -> String {
     match (scenario.tolerance, scenario.claim) {
         (Tolerance::Absolute(size), Claim::Quantile { .. }) => {
             let text = number(size);
-            if text == "1" { "1 standard deviation".to_owned() } else { format!("{text} standard deviations") }
+            if text == "1" {
+                "1 standard deviation".to_owned()
+            } else {
+                format!("{text} standard deviations")
+            }
         }
         (Tolerance::Absolute(size), _) => points(size),
         (Tolerance::Relative(share), _) => format!("{} of its value", percent(share)),

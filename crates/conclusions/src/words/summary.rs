@@ -37,7 +37,9 @@ pub fn summary_paragraph(report: &Report) -> String {
                     _ => "by numerical inversion",
                 };
                 match draws {
-                    Some(draws) => format!("{exact}, and the claim by simulation with {} draws", whole(draws)),
+                    Some(draws) => {
+                        format!("{exact}, and the claim by simulation with {} draws", whole(draws))
+                    }
                     None => exact.to_owned(),
                 }
             }
@@ -54,7 +56,10 @@ pub(crate) fn safe_from_sentence(report: &Report) -> Option<String> {
     let how = if checked.every_n {
         format!("every n up to {up_to} was checked")
     } else {
-        format!("{} values of n up to {up_to} were checked", whole(checked.which.as_ref().map_or(0, Vec::len) as u64))
+        format!(
+            "{} values of n up to {up_to} were checked",
+            whole(checked.which.as_ref().map_or(0, Vec::len) as u64)
+        )
     };
     let n = size_word(&report.scenario);
     Some(match report.verdict.safe_from {

@@ -1,10 +1,11 @@
 //! The blocks of text below the figures: tails, remedies and rules of thumb, the law's facts, cautions.
 
 use super::canvas::{Anchor, Canvas, Rect};
-use super::table::{Column, Table, heading};
+use super::law_picture;
+use super::table::{Column, HEADING_ROOM, Table, heading};
 use super::text::{Font, wrapped};
-use crate::numbers::{error_only, figure_in, number, optional};
-use gaussgap_conclusions::report::{Report, Summand, TailRow};
+use crate::numbers::{error_only, figure_in, number, optional, whole};
+use gaussgap_conclusions::report::{Guarantee, Remedy, Report, RuleOfThumb, Summand, TailRow};
 
 const BODY: Font = Font::regular(13.0);
 
@@ -31,7 +32,6 @@ pub(super) fn tails(canvas: &mut Canvas, area: Rect, report: &Report) {
         rows: chosen(&report.tails, 15).into_iter().map(tail_row).collect(),
         lines: 1,
     };
-    let table = Table { rows: table.rows, ..table };
     table.draw(canvas, rest);
 }
 
@@ -58,61 +58,92 @@ fn tail_row(row: &TailRow) -> Vec<String> {
     ]
 }
 
-/// Remedies, then the rules of thumb.
+/// Remedies, then what is guaranteed (deviation claims), then the rules of thumb.
 pub(super) fn remedies(canvas: &mut Canvas, area: Rect, report: &Report) {
     let rest = heading(canvas, area, "Remedies at the planned n");
-    let mut bottom = rest.top;
-    if report.remedies.is_empty() {
-        bottom = paragraph(canvas, rest, "None was computed.") + 6.0;
+    let below: Vec<Table> = [guarantees(report), rules(report)].into_iter().flatten().collect();
+    let mut top = if report.remedies.is_empty() {
+        paragraph(canvas, rest, "None was computed.") + 6.0
     } else {
-        let table = Table {
-            columns: vec![text("remedy"), numeric("actual"), numeric("holds")],
-            rows: report
-                .remedies
-                .iter()
-                .map(|remedy| {
-                    let note = remedy.note.trim();
-                    vec![
-                        if note.is_empty() {
-                            remedy.name.clone()
-                        } else {
-                            format!("{}: {note}", remedy.name)
-                        },
-                        remedy.actual.map_or_else(|| "–".to_owned(), |actual| figure_in(&actual, 5)),
-                        if remedy.holds { "✓ yes" } else { "✗ no" }.to_owned(),
-                    ]
-                })
-                .collect(),
-            lines: 2,
-        };
-        let share = if report.rules_of_thumb.is_empty() { 1.0 } else { 0.66 };
-        let room = Rect { bottom: rest.top + share * rest.height(), ..rest };
-        bottom = table.draw(canvas, room).max(bottom) + 12.0;
-    }
-    if report.rules_of_thumb.is_empty() || area.bottom - bottom < 44.0 {
-        return;
-    }
-    let table = Table {
-        columns: vec![text("rule of thumb"), numeric("says"), numeric("right here")],
-        rows: report
-            .rules_of_thumb
-            .iter()
-            .map(|rule| {
-                let agrees = match rule.agrees {
-                    Some(true) => "✓ yes",
-                    Some(false) => "✗ no",
-                    None => "–",
-                };
-                vec![rule.rule.clone(), rule.says.clone(), agrees.to_owned()]
-            })
-            .collect(),
-        lines: 1,
+        let share = [1.0, 0.62, 0.45][below.len().min(2)];
+        remedy_table(report).draw(canvas, Rect { bottom: rest.top + share * rest.height(), ..rest }) + 12.0
     };
-    table.draw(canvas, Rect { top: bottom, ..area });
+    let count = below.len();
+    for (index, table) in below.into_iter().enumerate() {
+        let bottom = top + (area.bottom - top) / (count - index) as f64;
+        if bottom - top >= 44.0 {
+            top = table.draw(canvas, Rect { top, bottom, ..area }) + 12.0;
+        }
+    }
+}
+
+fn remedy_table(report: &Report) -> Table {
+    let row = |remedy: &Remedy| {
+        let note = remedy.note.trim();
+        vec![
+            if note.is_empty() { remedy.name.clone() } else { format!("{}: {note}", remedy.name) },
+            remedy.actual.map_or_else(|| "–".to_owned(), |actual| figure_in(&actual, 5)),
+            if remedy.holds { "✓ yes" } else { "✗ no" }.to_owned(),
+        ]
+    };
+    Table {
+        columns: vec![text("remedy"), numeric("actual"), numeric("holds")],
+        rows: report.remedies.iter().map(row).collect(),
+        lines: 2,
+    }
+}
+
+fn guarantees(report: &Report) -> Option<Table> {
+    let guarantees = report.claim.guarantees.as_ref().filter(|list| !list.is_empty())?;
+    let needed = |name: &str| match report.claim.needed_n.as_ref().and_then(|needed| needed.get(name)) {
+        Some(Some(n)) => whole(*n),
+        Some(None) => "none".to_owned(),
+        None => "–".to_owned(),
+    };
+    let row = |guarantee: &Guarantee| {
+        vec![guarantee.name.clone(), optional(guarantee.value, 4), needed(&guarantee.name)]
+    };
+    Some(Table {
+        columns: vec![text("guarantee"), numeric("at most"), numeric("needed n")],
+        rows: guarantees.iter().map(row).collect(),
+        lines: 1,
+    })
+}
+
+fn rules(report: &Report) -> Option<Table> {
+    let row = |rule: &RuleOfThumb| {
+        let agrees = match rule.agrees {
+            Some(true) => "✓ yes",
+            Some(false) => "✗ no",
+            None => "–",
+        };
+        vec![rule.rule.clone(), rule.says.clone(), agrees.to_owned()]
+    };
+    (!report.rules_of_thumb.is_empty()).then(|| Table {
+        columns: vec![text("rule of thumb"), numeric("says"), numeric("agrees")],
+        rows: report.rules_of_thumb.iter().map(row).collect(),
+        lines: 1,
+    })
+}
+
+/// The law's facts, its picture where there is room, and the cautions.
+pub(super) fn law_and_cautions(canvas: &mut Canvas, area: Rect, report: &Report) {
+    let mut bottom = law(canvas, area, report);
+    let notes = notes(report);
+    let needed = HEADING_ROOM + 14.0 + cautions_height(&notes, area.width(), Font::regular(12.0)).max(20.0);
+    let room = (area.bottom - bottom - 8.0 - needed).min(law_picture::MOST);
+    if room >= law_picture::LEAST
+        && let Some(bars) = law_picture::bars(report)
+    {
+        let picture = Rect { top: bottom + 8.0, bottom: bottom + 8.0 + room, ..area };
+        let unit = report.scenario.quantity.as_ref().and_then(|quantity| quantity.unit.as_deref());
+        bottom = law_picture::draw(canvas, picture, &bars, unit);
+    }
+    cautions(canvas, Rect { top: bottom + 14.0, ..area }, &notes);
 }
 
 /// What is known of the law of one summand.
-pub(super) fn law(canvas: &mut Canvas, area: Rect, report: &Report) -> f64 {
+fn law(canvas: &mut Canvas, area: Rect, report: &Report) -> f64 {
     let several = !report.summands.is_empty();
     let rest =
         heading(canvas, area, if several { "The laws of the summands" } else { "The law of one summand" });
@@ -180,15 +211,27 @@ fn shape(law: &Summand, several: bool) -> String {
     format!("{whose}{atoms}{lattice}.")
 }
 
-/// Cautions and warnings, as many as there is room for.
-pub(super) fn cautions(canvas: &mut Canvas, area: Rect, report: &Report) {
-    let rest = heading(canvas, area, "Cautions");
-    let mut notes: Vec<&str> = report.cautions.iter().map(String::as_str).collect();
-    for warning in &report.summand.warnings {
-        if !notes.contains(&warning.as_str()) {
-            notes.push(warning);
+/// Cautions, then what the laws warn of, each once.
+fn notes(report: &Report) -> Vec<&str> {
+    let mut notes: Vec<&str> = Vec::new();
+    let warnings = report.summands.iter().chain([&report.summand]).flat_map(|law| &law.warnings);
+    for note in report.cautions.iter().chain(warnings) {
+        if !notes.contains(&note.as_str()) {
+            notes.push(note);
         }
     }
+    notes
+}
+
+fn cautions_height(notes: &[&str], wide: f64, font: Font) -> f64 {
+    let high =
+        |note: &&str| wrapped(note, font, wide - 16.0, usize::MAX).len() as f64 * font.line_height() + 4.0;
+    notes.iter().map(high).sum()
+}
+
+/// Cautions and warnings, as many as there is room for.
+fn cautions(canvas: &mut Canvas, area: Rect, notes: &[&str]) {
+    let rest = heading(canvas, area, "Cautions");
     if notes.is_empty() {
         paragraph(canvas, rest, "None beyond the usual one: a model is not the world.");
         return;
@@ -198,13 +241,10 @@ pub(super) fn cautions(canvas: &mut Canvas, area: Rect, report: &Report) {
     let blocks = |font: Font| -> Vec<Vec<String>> {
         notes.iter().map(|note| wrapped(note, font, rest.width() - 16.0, usize::MAX)).collect()
     };
-    let needed = |font: Font| -> f64 {
-        blocks(font).iter().map(|lines| lines.len() as f64 * font.line_height() + 4.0).sum::<f64>()
-    };
     let font = [13.0, 12.5, 12.0, 11.5, 11.0, 10.5]
         .into_iter()
         .map(Font::regular)
-        .find(|&font| needed(font) <= rest.height())
+        .find(|&font| cautions_height(notes, rest.width(), font) <= rest.height())
         .unwrap_or(Font::regular(10.5));
     let all = blocks(font);
     let mut y = rest.top + font.size;

@@ -12,6 +12,7 @@ mod frame;
 mod gap;
 mod growth;
 mod header;
+mod law_picture;
 mod picture;
 mod style;
 mod table;
@@ -73,8 +74,7 @@ fn three_columns(canvas: &mut Canvas, body: Rect, report: &Report) {
     let [left, middle, right] = columns(blocks);
     blocks::tails(canvas, left, report);
     blocks::remedies(canvas, middle, report);
-    let bottom = blocks::law(canvas, right, report);
-    blocks::cautions(canvas, Rect { top: bottom + 14.0, ..right }, report);
+    blocks::law_and_cautions(canvas, right, report);
 }
 
 /// For upright paper: two figures, then growth beside the law, then the tables, then the cautions.
@@ -88,8 +88,7 @@ fn two_columns(canvas: &mut Canvas, body: Rect, report: &Report) {
     gap::draw(canvas, right, report);
     let [left, right] = row(0.35, 0.70);
     growth::draw(canvas, left, report);
-    let bottom = blocks::law(canvas, right, report);
-    blocks::cautions(canvas, Rect { top: bottom + 16.0, ..right }, report);
+    blocks::law_and_cautions(canvas, right, report);
     let [left, right] = row(0.70, 1.0);
     blocks::tails(canvas, left, report);
     blocks::remedies(canvas, right, report);

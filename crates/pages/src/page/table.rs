@@ -109,7 +109,8 @@ impl Table {
                     return (font, widths);
                 }
             } else if widths.iter().sum::<f64>() + gaps <= room {
-                let spare = (room - gaps - widths.iter().sum::<f64>()) / self.columns.len().max(1) as f64;
+                let spare = (room - gaps - widths.iter().sum::<f64>())
+                    / self.columns.len().saturating_sub(1).max(1) as f64;
                 widths.iter_mut().skip(1).for_each(|width| *width += spare);
                 return (font, widths);
             } else if size == 9.0 {

@@ -132,6 +132,23 @@ fn a_title_of_200_characters_and_unbreakable_words_are_readable() {
 }
 
 #[test]
+fn guarantees_of_a_deviation_claim_are_shown() {
+    let mut report = fixture::exponential();
+    report.claim.kind = "deviation".to_owned();
+    let row = |name: &str, value| Guarantee {
+        name: name.to_owned(),
+        value,
+        conditions: "finite variance".to_owned(),
+        source: "–".to_owned(),
+    };
+    report.claim.guarantees = Some(vec![row("Chebyshev", Some(0.25)), row("Hoeffding", None)]);
+    report.claim.needed_n = Some([("Chebyshev".to_owned(), Some(12_345))].into());
+    assert_readable(&report, "guarantees");
+    let text = text_of(&to_svg(&report, &PageStyle::default()));
+    assert!(text.contains("Chebyshev 0.25 12\u{202f}345 Hoeffding – –"), "{text}");
+}
+
+#[test]
 fn extreme_values_are_readable() {
     for extreme in [1e-300, 1e-12, 1e12, 1e300, f64::MAX, -1e300, 5e-324] {
         let mut report = fixture::exponential();

@@ -1,6 +1,6 @@
 //! From a law as written to a law made ready: checks, normal form, facts.
 
-use super::checks::{Checks, show};
+use super::checks::{Checks, shares, show};
 use super::density::StandardMoments;
 use super::form::Form;
 use super::opaque::Opaque;
@@ -12,6 +12,9 @@ use super::{
 
 /// Deepest nesting of operations.
 const DEEPEST: usize = 64;
+
+/// Smallest share of a mixture: keeps moments of rare, huge parts inside the range of doubles.
+const LEAST_SHARE: f64 = 1e-250;
 
 /// Most continuous pieces of one law.
 const MOST_PIECES: usize = 1 << 14;
@@ -110,6 +113,17 @@ fn mixture(
     for (index, part) in parts.iter().enumerate() {
         good &= checks.positive(&format!("parts/{index}/weight"), part.weight);
     }
+    if good {
+        let weights: Vec<f64> = parts.iter().map(|part| part.weight).collect();
+        for (index, share) in shares(&weights).into_iter().enumerate() {
+            if share < LEAST_SHARE {
+                let message =
+                    format!("must be at least {LEAST_SHARE:e} of all weights (got {})", show(weights[index]));
+                checks.problem(&format!("parts/{index}/weight"), message);
+                good = false;
+            }
+        }
+    }
     let forms: Vec<Option<Form>> = parts
         .iter()
         .enumerate()
@@ -183,21 +197,35 @@ pub(super) fn finish(mut form: Form) -> Result<Law, String> {
     let found = moments::of_form(&form);
     let index = moments::tail_index(&form);
     warn(&mut form.warnings, index);
+    if !form.opaque.is_empty() && index > 3.0 {
+        form.warnings.push(
+            "the third absolute moment of this law is not computed: no Berry–Esseen bound is given"
+                .to_owned(),
+        );
+    }
     let lattice = if discrete { lattice::of_atoms(&form.atoms) } else { None };
     let only_simulation = only_simulation(&form);
     let support = form.support();
     let sd = found.standard.sd;
+    if found.standard.mean.is_some_and(|mean| !mean.is_finite()) || sd.is_some_and(|sd| !sd.is_finite()) {
+        return Err("its mean or spread is too large to be written as a number".to_owned());
+    }
+    let known = [found.standard.skewness, found.standard.excess_kurtosis, found.third_absolute_ratio];
+    if known.iter().flatten().any(|value| value.is_nan()) {
+        return Err("a part of it lies too far out in a tail for double precision".to_owned());
+    }
     let constant = sd == Some(0.0);
     // Squares and cubes may leave the range of doubles where the sd does not: `Law::sd` and
     // `Law::third_absolute_ratio` stay exact.
     let ordinary = |value: f64| {
         if constant { 0.0 } else { value.clamp(f64::MIN_POSITIVE, f64::MAX) }
     };
+    let inside_doubles = |value: f64| value.clamp(f64::MIN, f64::MAX);
     let moments = Moments {
         mean: found.standard.mean,
         variance: sd.map(|sd| ordinary(sd * sd)),
-        skewness: if constant { None } else { found.standard.skewness },
-        excess_kurtosis: if constant { None } else { found.standard.excess_kurtosis },
+        skewness: if constant { None } else { found.standard.skewness.map(inside_doubles) },
+        excess_kurtosis: if constant { None } else { found.standard.excess_kurtosis.map(inside_doubles) },
         third_absolute_central: match (sd, found.third_absolute_ratio) {
             (Some(_), _) if constant => Some(0.0),
             (Some(sd), Some(ratio)) => Some(ordinary(ratio * sd * sd * sd)),
@@ -215,7 +243,12 @@ pub(super) fn finish(mut form: Form) -> Result<Law, String> {
         only_simulation,
         warnings: form.warnings,
     };
-    Ok(Law::from_prepared(Prepared::new(parts, form.opaque, sd, found.third_absolute_ratio)))
+    Ok(Law::from_prepared(Prepared::new(
+        parts,
+        form.opaque,
+        sd,
+        found.third_absolute_ratio.map(inside_doubles),
+    )))
 }
 
 /// A law on two values is an affine image of a Bernoulli law.
@@ -223,14 +256,15 @@ fn two_values(form: &mut Form) {
     if let [low, high] = form.atoms[..] {
         let width = high.value - low.value;
         if width.is_finite() {
-            // The rarer value's mass is the better known.
-            let p = if high.mass <= 0.5 { high.mass } else { 1.0 - low.mass };
-            form.closed_form = Some(ClosedForm {
-                family: ClosedFamily::Binomial { trials: 1, p },
-                add: low.value,
-                multiply: width,
-            });
-            form.exact = Some(families::bernoulli_moments(p).image(low.value, width));
+            // The rarer value counts as the success, because its mass is the better known.
+            let (p, add, multiply) = if high.mass <= low.mass {
+                (high.mass, low.value, width)
+            } else {
+                (low.mass, high.value, -width)
+            };
+            form.closed_form =
+                Some(ClosedForm { family: ClosedFamily::Binomial { trials: 1, p }, add, multiply });
+            form.exact = Some(families::bernoulli_moments(p).image(add, multiply));
         }
     }
 }

@@ -44,7 +44,7 @@ pub(super) fn check_count(count: &Form) -> Result<(), Refusal> {
 pub(super) fn compile(mut count: Form, mut each: Form) -> Result<Form, Refusal> {
     count.merge_atoms();
     each.merge_atoms();
-    let kept = trimmed(&count);
+    let kept = trimmed(&count.atoms, count.missing_mass, NEGLIGIBLE);
     let mut warnings = each.warnings.clone();
     let discrete = each.pieces.is_empty() && each.opaque.is_empty();
     let form = if discrete && let Some(table) = table(&kept, &each) {
@@ -58,33 +58,34 @@ pub(super) fn compile(mut count: Form, mut each: Form) -> Result<Form, Refusal> 
     Ok(Form { warnings, ..form })
 }
 
-/// The numbers of summands without a negligible upper end, and what was left out.
-fn trimmed(count: &Form) -> (Vec<Atom>, f64) {
-    let mut atoms = count.atoms.clone();
+/// The atoms without a negligible upper end, and the mass left out.
+fn trimmed(atoms: &[Atom], missing_mass: f64, negligible: f64) -> (Vec<Atom>, f64) {
+    let mut atoms = atoms.to_vec();
     let mut left_out = 0.0;
     while let Some(last) = atoms.last() {
-        if left_out + last.mass > NEGLIGIBLE || atoms.len() == 1 {
+        if left_out + last.mass > negligible || atoms.len() == 1 {
             break;
         }
         left_out += last.mass;
         atoms.pop();
     }
-    (atoms, count.missing_mass + left_out)
+    (atoms, missing_mass + left_out)
 }
 
 /// The table of the sum, if it and the work for it are short enough.
 fn table((counts, missing): &(Vec<Atom>, f64), each: &Form) -> Option<Form> {
+    let mean_count = compensated_sum(counts.iter().map(|a| a.mass * a.value)).max(1.0);
+    let (values, values_missing) = trimmed(&each.atoms, each.missing_mass, NEGLIGIBLE / mean_count);
     // 0 must be on the lattice because sums of different numbers of summands share it.
-    let mut with_zero = each.atoms.clone();
+    let mut with_zero = values.clone();
     with_zero.push(Atom { value: 0.0, mass: 0.0 });
     with_zero.sort_by(|a, b| a.value.total_cmp(&b.value));
     let span = match lattice::of_atoms(&with_zero) {
         Some(lattice) => lattice.span,
-        None if each.atoms.iter().all(|atom| atom.value == 0.0) => 1.0,
+        None if values.iter().all(|atom| atom.value == 0.0) => 1.0,
         None => return None,
     };
-    let steps: Vec<(i64, f64)> =
-        each.atoms.iter().map(|a| ((a.value / span).round() as i64, a.mass)).collect();
+    let steps: Vec<(i64, f64)> = values.iter().map(|a| ((a.value / span).round() as i64, a.mass)).collect();
     let (low, high) = (steps.first()?.0.min(0), steps.last()?.0.max(0));
     let most = counts.last()?.value;
     let width = (high - low) as f64;
@@ -117,8 +118,7 @@ fn table((counts, missing): &(Vec<Atom>, f64), each: &Form) -> Option<Form> {
         .filter(|(_, mass)| *mass > 0.0)
         .map(|(j, mass)| Atom { value: (j as i64 + shift) as f64 * span, mass })
         .collect();
-    let mean_count = compensated_sum(counts.iter().map(|a| a.mass * a.value));
-    let missing_mass = missing + each.missing_mass * mean_count.max(1.0);
+    let missing_mass = missing + values_missing * mean_count;
     (missing_mass <= 1e-30).then(|| Form::atoms(atoms, missing_mass))
 }
 

@@ -3,6 +3,7 @@
 use super::checks::{compensated_sum, shares};
 use super::density::StandardMoments;
 use super::opaque::{Opaque, OpaqueLaw};
+use super::rounded::Rounded;
 use super::{Atom, ClosedFamily, ClosedForm, Piece};
 use std::sync::Arc;
 
@@ -174,6 +175,7 @@ impl Form {
         let nearest = |value: f64| (value / step).round_ties_even();
         let mut cells: std::collections::BTreeMap<i64, f64> = std::collections::BTreeMap::new();
         let mut missing_mass = self.missing_mass;
+        let mut opaque = Vec::new();
         let too_many = || {
             format!(
                 "the rounded law would have more than {MOST_ATOMS} values; take a larger step or cap it first"
@@ -197,8 +199,14 @@ impl Form {
             };
             let low = nearest(reach(piece.image_low(), far_low));
             let high = nearest(reach(piece.image_high(), far_high));
-            if high - low > MOST_ATOMS as f64 || low.abs().max(high.abs()) > 9e15 {
-                return Err(too_many());
+            if low.abs().max(high.abs()) > 9e15 || high - low > MOST_ATOMS as f64 {
+                let (near, far) = (nearest(piece.image(piece.conditional_quantile(0.5))), 9e15);
+                if near.abs() > far {
+                    return Err(too_many());
+                }
+                let (weight, law) = (piece.mass(), Arc::new(Rounded::new(piece.clone(), step)));
+                opaque.push(Opaque { weight, law, add: 0.0, multiply: 1.0 });
+                continue;
             }
             missing_mass += piece.at_or_below((low - 0.5) * step) + piece.above((high + 0.5) * step);
             // Cell masses as differences from the nearer end, so that both tails keep their relative accuracy.
@@ -219,7 +227,7 @@ impl Form {
             return Err(too_many());
         }
         let atoms = cells.into_iter().map(|(k, mass)| Atom { value: k as f64 * step, mass }).collect();
-        Ok(Self { atoms, missing_mass, warnings: self.warnings, ..Self::default() })
+        Ok(Self { atoms, missing_mass, opaque, warnings: self.warnings, ..Self::default() })
     }
 
     fn refuse_opaque(&self, operation: &str) -> Result<(), Refusal> {

@@ -15,40 +15,53 @@ pub(crate) fn of_atoms(atoms: &[Atom]) -> Option<Lattice> {
     if !(range > 0.0 && range.is_finite()) {
         return None;
     }
-    // Rounding of the values and of their differences.
+    // Rounding of the largest value, and of each distance.
     let noise = f64::EPSILON * first.abs().max(last.abs());
+    let noise_of = |value: f64| f64::EPSILON * (first.abs() + value.abs());
     let mut span = range;
     for atom in atoms {
         let distance = atom.value - first;
         let spans = (distance / span).round();
-        let off = (distance - spans * span).abs();
-        if off <= 2.0 * noise + spans * span * f64::EPSILON {
+        let off = Length {
+            value: (distance - spans * span).abs(),
+            noise: noise_of(atom.value) + spans * span * f64::EPSILON,
+        };
+        if off.value <= 2.0 * off.noise {
             continue;
         }
-        span = refined(divisor(span, off, 2.0 * noise)?, range)?;
+        let whole = Length { value: span, noise: noise_of(last) * (span / range) };
+        span = refined(divisor(whole, off)?, range)?;
     }
     let tolerance = 4.0 * noise;
     let fits = atoms.iter().all(|atom| {
         let distance = atom.value - first;
         let spans = (distance / span).round();
-        spans < MOST_SPANS && (distance - spans * span).abs() <= tolerance.max(2.0 * f64::EPSILON * distance)
+        spans < MOST_SPANS && (distance - spans * span).abs() <= tolerance
     });
     // A span close to the noise fits anything and means nothing.
     (fits && span > 16.0 * noise).then_some(Lattice { offset: first, span })
 }
 
-/// Euclid's algorithm on two lengths of which the first is exact to `noise` and the second too; the noise of
-/// a remainder grows with the quotients that led to it.
-fn divisor(span: f64, off: f64, noise: f64) -> Option<f64> {
-    let (mut larger, mut smaller) = (span, off);
+/// A length and how far rounding may have moved it.
+#[derive(Clone, Copy)]
+struct Length {
+    value: f64,
+    noise: f64,
+}
+
+/// Euclid's algorithm on two lengths; a remainder inherits their noise, multiplied by the quotient.
+fn divisor(mut larger: Length, mut smaller: Length) -> Option<f64> {
     for _ in 0..100 {
-        let remainder = (larger - (larger / smaller).round() * smaller).abs();
-        let tolerance = noise * (4.0 * span / smaller);
-        if smaller <= 4.0 * tolerance {
+        if smaller.value <= 8.0 * smaller.noise {
             return None;
         }
-        if remainder <= tolerance {
-            return Some(smaller);
+        let quotient = (larger.value / smaller.value).round();
+        let remainder = Length {
+            value: (larger.value - quotient * smaller.value).abs(),
+            noise: larger.noise + quotient * smaller.noise,
+        };
+        if remainder.value <= 4.0 * remainder.noise {
+            return Some(smaller.value);
         }
         (larger, smaller) = (smaller, remainder);
     }

@@ -3,7 +3,8 @@
 //! Every law, however nested, compiles to the same normal form: finitely many *atoms* (or a whole lattice of
 //! them) and finitely many *pieces*, each a shifted, scaled, truncated analytic density. Mixtures, affine
 //! images, caps and restrictions stay inside this form, so the routes in [`crate::sum`] need to know nothing
-//! about how a law was built.
+//! about how a law was built. What does not fit (compound sums of amounts without a closed form, heavy tails rounded to
+//! a fine step) keeps its moments and can be drawn from; `only_simulation` says so.
 
 mod checks;
 mod compile;
@@ -18,6 +19,7 @@ mod opaque;
 mod piece;
 mod probabilities;
 mod quadrature;
+mod rounded;
 mod sampler;
 pub mod spec;
 #[cfg(test)]

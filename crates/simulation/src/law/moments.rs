@@ -18,9 +18,9 @@ pub(crate) struct LawMoments {
 
 /// One component with its share of the probability.
 #[derive(Debug, Clone, Copy)]
-struct Component {
-    mass: f64,
-    moments: StandardMoments,
+pub(crate) struct Component {
+    pub(crate) mass: f64,
+    pub(crate) moments: StandardMoments,
 }
 
 /// The moments of the law `form`, whose atoms are merged.
@@ -61,7 +61,7 @@ pub(crate) fn tail_index(form: &Form) -> f64 {
 }
 
 /// Moments of a mixture of components about their common mean.
-fn combine(components: &[Component]) -> StandardMoments {
+pub(crate) fn combine(components: &[Component]) -> StandardMoments {
     let total = compensated_sum(components.iter().map(|c| c.mass));
     let size = components.iter().filter_map(|c| c.moments.mean).map(f64::abs).fold(0.0, f64::max);
     let mut none = StandardMoments { mean: None, sd: None, skewness: None, excess_kurtosis: None };
@@ -92,12 +92,16 @@ fn combine(components: &[Component]) -> StandardMoments {
         .collect();
     let variance = compensated_sum(scaled.iter().map(|&(w, d, s, _)| w * (d * d + s * s)));
     let sd = variance.sqrt();
+    if sd == 0.0 {
+        // All but less than the smallest double's share of the law is one value.
+        return StandardMoments::finite(mean, 0.0, 0.0, -3.0);
+    }
     none.sd = Some(unit * sd);
     if scaled.iter().all(|(_, _, s, m)| *s == 0.0 || m.skewness.is_some()) {
         let third = compensated_sum(scaled.iter().flat_map(|&(w, d, s, m)| {
             [w * d * d * d, 3.0 * w * d * s * s, w * m.skewness.unwrap_or(0.0) * s * s * s]
         }));
-        none.skewness = Some(third / (variance * sd));
+        none.skewness = Some(third / variance / sd);
         if scaled.iter().all(|(_, _, s, m)| *s == 0.0 || m.excess_kurtosis.is_some()) {
             let fourth = compensated_sum(scaled.iter().flat_map(|&(w, d, s, m)| {
                 let (d2, s2) = (d * d, s * s);
@@ -108,19 +112,24 @@ fn combine(components: &[Component]) -> StandardMoments {
                     w * (m.excess_kurtosis.unwrap_or(0.0) + 3.0) * s2 * s2,
                 ]
             }));
-            none.excess_kurtosis = Some(fourth / (variance * variance) - 3.0);
+            none.excess_kurtosis = Some(fourth / variance / variance - 3.0);
         }
     }
     none
 }
 
 /// Moments of one piece, conditional on lying on it, in the quantity's unit.
-fn of_piece(piece: &Piece) -> StandardMoments {
+pub(crate) fn of_piece(piece: &Piece) -> StandardMoments {
     if piece.is_whole()
         && let Some(moments) = piece.density.standard_moments()
     {
         return moments.image(piece.add, piece.multiply);
     }
+    by_quadrature(piece)
+}
+
+/// The same by quadrature, whether or not the density has closed moments.
+pub(crate) fn by_quadrature(piece: &Piece) -> StandardMoments {
     let (upper, lower) = piece.tail_indices();
     let index = upper.min(lower);
     let mut nodes = Nodes::of(piece);
@@ -134,8 +143,8 @@ fn of_piece(piece: &Piece) -> StandardMoments {
     let moments = StandardMoments {
         mean: Some(mean),
         sd: sd.map(|sd| unit * sd),
-        skewness: sd.zip(powers[1]).map(|(sd, third)| third / (sd * sd * sd)),
-        excess_kurtosis: sd.zip(powers[2]).map(|(sd, fourth)| fourth / (sd * sd * sd * sd) - 3.0),
+        skewness: sd.zip(powers[1]).map(|(sd, third)| third / sd / sd / sd),
+        excess_kurtosis: sd.zip(powers[2]).map(|(sd, fourth)| fourth / sd / sd / sd / sd - 3.0),
     };
     moments.image(piece.add, piece.multiply)
 }
@@ -194,7 +203,7 @@ impl Nodes {
     /// ∫ beyond the panels of |y/unit|^order, for tails C|y|^{−index−1}.
     fn beyond(tail: Option<(f64, f64, f64)>, order: f64, unit: f64) -> f64 {
         match tail {
-            Some((y, density, index)) if index > order => {
+            Some((y, density, index)) if index > order && density > 0.0 => {
                 (y.abs() / unit).powf(order) * (density * y.abs()) / (index - order)
             }
             _ => 0.0,
@@ -258,14 +267,21 @@ fn extend(points: &mut Vec<f64>, from: f64) {
 
 /// E|X − mean|³/sd³ by quadrature split at the mean.
 fn third_absolute(form: &Form, mean: f64, sd: f64) -> f64 {
-    let cube = |x: f64| {
-        let d = ((x - mean) / sd).abs();
+    let atoms = form.atoms.iter().map(|atom| {
+        // The mass is spread over the factors: neither a tiny mass nor a huge cube leaves the range alone.
+        let d = ((atom.value - mean) / sd).abs() * atom.mass.cbrt();
         d * d * d
-    };
-    let atoms = form.atoms.iter().map(|atom| atom.mass * cube(atom.value));
+    });
     let pieces = form.pieces.iter().map(|piece| {
         let split = piece.preimage(mean);
-        let parts: Vec<Piece> = if split > piece.low && split < piece.high {
+        let inside = split > piece.low && split < piece.high;
+        let scale = piece.multiply.abs();
+        // (x − mean)/sd without cancellation: from the split where it is on the piece, from the shift elsewhere.
+        let shift = (piece.add - mean) / sd * piece.multiply.signum();
+        let rate = scale / sd;
+        let in_sds = |y: f64| if rate.is_finite() { y * rate } else { y * scale / sd };
+        let deviation = |y: f64| if inside { in_sds(y - split) } else { shift + in_sds(y) };
+        let parts: Vec<Piece> = if inside {
             vec![Piece { high: split, ..piece.clone() }, Piece { low: split, ..piece.clone() }]
         } else {
             vec![piece.clone()]
@@ -276,13 +292,12 @@ fn third_absolute(form: &Form, mean: f64, sd: f64) -> f64 {
                 return 0.0;
             }
             let nodes = Nodes::of(part);
-            let unit = sd / piece.multiply.abs();
-            mass * (compensated_sum(nodes.points.iter().map(|p| {
-                // As in `central_powers`: no overflow where a tiny weight meets a huge cube.
-                let d = ((p.0 - split).abs() / unit) * p.1.max(0.0).cbrt();
+            let root = mass.cbrt();
+            compensated_sum(nodes.points.iter().map(|p| {
+                let d = (deviation(p.0) * root).abs() * p.1.max(0.0).cbrt();
                 d * d * d
-            })) + Nodes::beyond(nodes.upper, 3.0, unit)
-                + Nodes::beyond(nodes.lower, 3.0, unit))
+            })) + Nodes::beyond(nodes.upper, 3.0, sd / scale / root)
+                + Nodes::beyond(nodes.lower, 3.0, sd / scale / root)
         }))
     });
     compensated_sum(atoms.chain(pieces))

@@ -73,49 +73,12 @@ impl Piece {
 
     /// The y that splits the piece into `p` of its mass below and the rest above, 0 < p < 1, in family units.
     pub(crate) fn conditional_quantile(&self, p: f64) -> f64 {
-        let (low, high) = (self.density.at_or_below(self.low), self.density.above(self.high));
-        let y = if low == 0.0 && high == 0.0 {
-            if p <= 0.5 { self.density.quantile(p) } else { self.density.quantile_above(1.0 - p) }
-        } else if low <= 0.5 && low + p * self.between(self.low, self.high) <= 0.5 {
-            self.quantile_or_end(low + p * self.between(self.low, self.high))
-        } else {
-            self.quantile_above_or_end(high + (1.0 - p) * self.between(self.low, self.high))
-        };
-        y.clamp(self.low, self.high)
+        Slice::of(self).quantile(p)
     }
 
     /// The y with `q` of the piece's mass above it, accurate for tiny q.
     pub(crate) fn conditional_quantile_above(&self, q: f64) -> f64 {
-        let high = self.density.above(self.high);
-        let target = high + q * self.between(self.low, self.high);
-        let y = if target <= 0.5 {
-            self.quantile_above_or_end(target)
-        } else {
-            self.quantile_or_end(
-                self.density.at_or_below(self.low) + (1.0 - q) * self.between(self.low, self.high),
-            )
-        };
-        y.clamp(self.low, self.high)
-    }
-
-    fn quantile_or_end(&self, p: f64) -> f64 {
-        if p > 0.0 && p < 1.0 {
-            self.density.quantile(p)
-        } else if p <= 0.0 {
-            self.low
-        } else {
-            self.high
-        }
-    }
-
-    fn quantile_above_or_end(&self, q: f64) -> f64 {
-        if q > 0.0 && q < 1.0 {
-            self.density.quantile_above(q)
-        } else if q <= 0.0 {
-            self.high
-        } else {
-            self.low
-        }
+        Slice::of(self).quantile_above(q)
     }
 
     fn clamped_preimage(&self, x: f64) -> f64 {
@@ -152,7 +115,9 @@ impl Piece {
         if f.lower_exponent() != 1.0 && support_low.is_finite() {
             points = grade_from(&points, support_low, 3.0);
         }
-        points.windows(2).map(|w| stretch(w[0], w[1], |y| f.density(y))).sum()
+        let integral: f64 = points.windows(2).map(|w| stretch(w[0], w[1], |y| f.density(y))).sum();
+        // So far out that the density is no ordinary double any more, the difference is all there is.
+        if integral > 1e-290 && integral.is_finite() { integral } else { difference }
     }
 
     /// Points in family units, ascending, from close to `low` to close to `high`, between which a 16–24 node
@@ -160,17 +125,18 @@ impl Piece {
     /// quantiles where the piece is a far-off part of the density, and its ends where they are finite.
     pub fn panel_points(&self) -> Vec<f64> {
         let mut points: Vec<f64> =
-            self.density.skeleton().into_iter().filter(|&y| y > self.low && y < self.high).collect();
+            self.density.skeleton().into_iter().filter(|&y| y >= self.low && y <= self.high).collect();
         points.extend(self.density.breakpoints().into_iter().filter(|&y| y > self.low && y < self.high));
-        if !self.is_whole() {
-            for level in LEVELS {
-                points.push(self.conditional_quantile(level));
-                points.push(self.conditional_quantile_above(level));
-            }
-        }
         let (support_low, support_high) = self.density.support();
         let singular_low = support_low.is_finite() && self.density.lower_exponent() != 1.0;
         let singular_high = support_high.is_finite() && self.density.upper_exponent() != 1.0;
+        if !self.is_whole() {
+            let slice = Slice::of(self);
+            // Quantiles that are hardly doubles any more would open a panel onto the singularity.
+            let usable = |y: &f64| !(singular_low && *y - support_low < 1e-290);
+            points.extend(LEVELS.iter().map(|&level| slice.quantile(level)).filter(usable));
+            points.extend(LEVELS.iter().map(|&level| slice.quantile_above(level)).filter(usable));
+        }
         if self.low > support_low || (self.low.is_finite() && !singular_low) {
             points.push(self.low);
         }
@@ -179,8 +145,6 @@ impl Piece {
         }
         let mut points = tidy(points);
         if support_low.is_finite() {
-            let smallest = support_low + f64::MIN_POSITIVE;
-            points.retain(|&y| y >= support_low && (y >= smallest || !singular_low));
             points = grade_from(&points, support_low, 4.0);
         }
         points
@@ -195,7 +159,7 @@ impl Piece {
                 let (a, b) = (self.image(w[0]), self.image(w[1]));
                 if a <= b { (a, b) } else { (b, a) }
             })
-            .filter(|(a, b)| a < b)
+            .filter(|(a, b)| a < b && a.is_finite() && b.is_finite())
             .collect();
         panels.sort_by(|one, other| one.0.total_cmp(&other.0));
         panels
@@ -231,18 +195,76 @@ impl Piece {
             y
         }
     }
+}
 
-    /// One draw from the piece, conditional on lying on it.
-    pub fn sample(&self, random: &mut dyn rand::Rng) -> f64 {
-        use rand::RngExt;
-        if self.is_whole() {
-            return self.image(self.density.sample(random));
+/// A piece with what its conditional quantiles need, computed once.
+#[derive(Debug, Clone)]
+pub(crate) struct Slice {
+    piece: Piece,
+    /// P(Y ≤ low), P(low < Y < high), P(Y > high) of the untruncated density.
+    below: f64,
+    inside: f64,
+    above: f64,
+}
+
+impl Slice {
+    pub(crate) fn of(piece: &Piece) -> Self {
+        Self {
+            below: piece.density.at_or_below(piece.low),
+            inside: piece.between(piece.low, piece.high),
+            above: piece.density.above(piece.high),
+            piece: piece.clone(),
         }
-        let u: f64 = random.sample(rand::distr::Open01);
-        self.image(if u <= 0.5 {
-            self.conditional_quantile(u)
+    }
+
+    /// The y with share `p` of the piece's mass below it.
+    pub(crate) fn quantile(&self, p: f64) -> f64 {
+        let target = self.below + p * self.inside;
+        if target <= 0.5 {
+            self.at_level(target)
         } else {
-            self.conditional_quantile_above(1.0 - u)
-        })
+            self.at_level_above(self.above + (1.0 - p) * self.inside)
+        }
+    }
+
+    /// The y with share `q` of the piece's mass above it.
+    pub(crate) fn quantile_above(&self, q: f64) -> f64 {
+        let target = self.above + q * self.inside;
+        if target <= 0.5 {
+            self.at_level_above(target)
+        } else {
+            self.at_level(self.below + (1.0 - q) * self.inside)
+        }
+    }
+
+    /// One draw by inverse transform, tails included.
+    pub(crate) fn sample(&self, random: &mut dyn rand::Rng) -> f64 {
+        use rand::RngExt;
+        let u: f64 = random.sample(rand::distr::Open01);
+        self.piece.image(if u <= 0.5 { self.quantile(u) } else { self.quantile_above(1.0 - u) })
+    }
+
+    fn at_level(&self, p: f64) -> f64 {
+        let piece = &self.piece;
+        let y = if p > 0.0 && p < 1.0 {
+            piece.density.quantile(p)
+        } else if p <= 0.0 {
+            piece.low
+        } else {
+            piece.high
+        };
+        y.clamp(piece.low, piece.high)
+    }
+
+    fn at_level_above(&self, q: f64) -> f64 {
+        let piece = &self.piece;
+        let y = if q > 0.0 && q < 1.0 {
+            piece.density.quantile_above(q)
+        } else if q <= 0.0 {
+            piece.high
+        } else {
+            piece.low
+        };
+        y.clamp(piece.low, piece.high)
     }
 }

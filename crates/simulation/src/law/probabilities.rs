@@ -94,6 +94,11 @@ impl Law {
         self.is_discrete() && self.atoms.len() == 1
     }
 
+    /// Whether a part of the law is neither tabulated nor given by a density.
+    pub fn share_is_opaque(&self) -> bool {
+        !self.inner.opaque.is_empty()
+    }
+
     /// Whether all mass sits on tabulated atoms.
     pub fn is_discrete(&self) -> bool {
         self.pieces.is_empty() && self.inner.opaque.is_empty()
@@ -169,11 +174,12 @@ impl Law {
         }
         if let ([piece], true, true) = (&self.pieces[..], self.atoms.is_empty(), self.inner.opaque.is_empty())
         {
-            return piece.image(if piece.multiply > 0.0 {
+            let y = if piece.multiply > 0.0 {
                 piece.conditional_quantile(p)
             } else {
                 piece.conditional_quantile_above(p)
-            });
+            };
+            return piece.image(y).clamp(f64::MIN, f64::MAX);
         }
         self.smallest(|x| self.at_or_below(x) >= p)
     }
@@ -188,11 +194,12 @@ impl Law {
         }
         if let ([piece], true, true) = (&self.pieces[..], self.atoms.is_empty(), self.inner.opaque.is_empty())
         {
-            return piece.image(if piece.multiply > 0.0 {
+            let y = if piece.multiply > 0.0 {
                 piece.conditional_quantile_above(q)
             } else {
                 piece.conditional_quantile(q)
-            });
+            };
+            return piece.image(y).clamp(f64::MIN, f64::MAX);
         }
         self.smallest(|x| self.above(x) <= q)
     }

@@ -5,6 +5,7 @@
 //! and one comparison whatever the number of atoms.
 
 use super::opaque::Opaque;
+use super::piece::Slice;
 use super::{LawParts, Piece};
 use rand::RngExt;
 
@@ -24,7 +25,7 @@ enum Source {
     /// A large part of the density: draw until inside.
     Reject(Piece),
     /// A small part: inverse transform.
-    Invert(Piece),
+    Invert(Slice),
     Opaque(Opaque),
 }
 
@@ -42,7 +43,7 @@ impl Sampler {
             } else if piece.between(piece.low, piece.high) > 0.25 {
                 Source::Reject(piece.clone())
             } else {
-                Source::Invert(piece.clone())
+                Source::Invert(Slice::of(piece))
             });
             masses.push(piece.mass());
         }
@@ -58,7 +59,7 @@ impl Sampler {
     pub fn sample<R: rand::Rng>(&self, random: &mut R) -> f64 {
         let source =
             if self.sources.len() == 1 { &self.sources[0] } else { &self.sources[self.choose(random)] };
-        match source {
+        let draw = match source {
             Source::Atom(value) => *value,
             Source::Whole(piece) => piece.image(piece.density.sample(random)),
             Source::Reject(piece) => loop {
@@ -67,9 +68,11 @@ impl Sampler {
                     break piece.image(y);
                 }
             },
-            Source::Invert(piece) => piece.sample(random),
+            Source::Invert(slice) => slice.sample(random),
             Source::Opaque(part) => part.sample(random),
-        }
+        };
+        // The far tail of an enormous law may leave the range of doubles.
+        draw.clamp(f64::MIN, f64::MAX)
     }
 
     /// The chosen source: one uniform number gives the column and the coin.

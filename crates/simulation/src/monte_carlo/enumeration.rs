@@ -294,7 +294,7 @@ pub(crate) fn misses(request: &StudentizedRequest, work: &Work) -> Result<Option
         }
     };
     let error = sums.doubtful + sums.left_out + rounding;
-    if !(error < 1e-8) {
+    if error.is_nan() || error >= 1e-8 {
         return Ok(None);
     }
     let outcome = Outcome { low: sums.low, high: sums.high, error };

@@ -20,6 +20,10 @@ pub(crate) enum Jumps {
 pub(crate) fn jumps_of(spec: &SumSpec, moments: &SumMoments, tolerance: f64) -> Jumps {
     let terms: Vec<_> = spec.terms.iter().filter(|term| term.count > 0 && term.multiply != 0.0).collect();
     let continuous = |term: &&crate::sum::Term| term.law.atoms.is_empty() && !term.law.pieces.is_empty();
+    if terms.iter().any(|term| term.law.only_simulation.is_some()) {
+        // Not in normal form: atoms and pieces are not the whole law.
+        return Jumps::Many;
+    }
     if terms.iter().any(continuous) {
         return Jumps::At(Vec::new());
     }

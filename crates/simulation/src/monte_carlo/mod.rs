@@ -1,9 +1,9 @@
 //! Monte Carlo: standardized sums and studentized statistics.
 //!
 //! [`sums`] simulates the distribution of a standardized sum, [`studentized`] answers how often intervals with an
-//! estimated spread miss (exactly where possible). All random numbers come from numbered blocks ([`streams`]), so
+//! estimated spread miss (exactly where possible). All random numbers come from numbered blocks (`streams`), so
 //! results do not depend on the number of threads; all stated errors are confidence statements about counts
-//! ([`bands`]) that rely on no normal approximation.
+//! (`bands`) that rely on no normal approximation.
 
 mod alias;
 mod bands;

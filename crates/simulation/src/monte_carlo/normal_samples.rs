@@ -72,6 +72,9 @@ pub(crate) fn misses(request: &StudentizedRequest, work: &Work) -> Result<Option
             };
             // A relative error ε of the critical value moves a probability by at most ε·max x φ(x) < ε/4 on average.
             outcome.error += table.error;
+            if outcome.error >= 1e-8 {
+                return Ok(None);
+            }
             let detail = "quadrature over the two sample variances of normal laws".to_owned();
             Ok(Some(outcome.misses(Route::ClosedForm, detail)))
         }

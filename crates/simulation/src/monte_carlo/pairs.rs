@@ -45,6 +45,10 @@ pub(crate) fn misses(request: &StudentizedRequest, work: &Work) -> Result<Option
     let Studentized::Mean { law, n } = request.statistic else { return Ok(None) };
     let Some((values, masses, span, offset)) = indices(law) else { return Ok(None) };
     let triangular: Vec<i64> = values.iter().map(|k| k * (k - 1) / 2).collect();
+    // Windows are never shorter than this: not worth a closer look otherwise.
+    if shortest(&values, &masses, n) * shortest(&triangular, &masses, n) > MOST_CELLS as f64 {
+        return Ok(None);
+    }
     let (Some(sums), Some(halves)) = (window(&values, &masses, n), window(&triangular, &masses, n)) else {
         return Ok(None);
     };
@@ -75,7 +79,7 @@ pub(crate) fn misses(request: &StudentizedRequest, work: &Work) -> Result<Option
         }
     }
     let error = total.doubtful.abs() + joint.error + 4.0 * (-LOG_RISK).exp() + size * law.missing_mass;
-    if !(error < 1e-8) {
+    if error.is_nan() || error >= 1e-8 {
         return Ok(None);
     }
     let outcome = Outcome { low: total.low, high: total.high, error };
@@ -107,14 +111,28 @@ fn indices(law: &Law) -> Option<(Vec<i64>, Vec<f64>, f64, f64)> {
     Some((values, masses, lattice.span, lattice.offset + center * lattice.span - mean))
 }
 
+/// Less than the length of any window that is likely enough: four sd on either side, or the whole range.
+fn shortest(values: &[i64], masses: &[f64], n: u64) -> f64 {
+    let size = n as f64;
+    let (_, variance) = mean_and_variance(values, masses);
+    let least = values.iter().copied().min().unwrap_or(0) as f64;
+    let most = values.iter().copied().max().unwrap_or(0) as f64;
+    (8.0 * (size * variance).sqrt()).min(size * (most - least)) + 1.0
+}
+
+fn mean_and_variance(values: &[i64], masses: &[f64]) -> (f64, f64) {
+    let total: f64 = masses.iter().sum();
+    let mean = values.iter().zip(masses).map(|(&v, mass)| v as f64 * mass).sum::<f64>() / total;
+    let squares = values.iter().zip(masses).map(|(&v, mass)| (v as f64 - mean).powi(2) * mass);
+    (mean, squares.sum::<f64>() / total)
+}
+
 /// A window that the n-fold sum leaves with probability below 2e^{−LOG_RISK}, by Chernoff's bound
 /// P(S ≥ x) ≤ e^{n ln M(θ) − θx} at the best of a list of θ, or by the ends of the support.
 fn window(values: &[i64], masses: &[f64], n: u64) -> Option<Window> {
     let size = n as f64;
     let total: f64 = masses.iter().sum();
-    let mean = values.iter().zip(masses).map(|(&v, mass)| v as f64 * mass).sum::<f64>() / total;
-    let variance =
-        values.iter().zip(masses).map(|(&v, mass)| (v as f64 - mean).powi(2) * mass).sum::<f64>() / total;
+    let (_, variance) = mean_and_variance(values, masses);
     let scale = (size * variance).sqrt().max(1e-300);
     let end = |sign: f64| {
         let largest = values.iter().map(|&v| sign * v as f64).fold(f64::NEG_INFINITY, f64::max);

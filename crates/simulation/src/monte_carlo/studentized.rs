@@ -5,9 +5,9 @@
 //! the estimated degrees of freedom. μ₀ (Δ₀) is what the interval is asked to contain: the true value, or with
 //! `shift` a value that far below it.
 //!
-//! Routes, the first that applies: normal laws in closed form or by quadrature ([`super::normal_samples`]); laws
-//! on few atoms by exact enumeration ([`super::enumeration`]); lattice laws with moderately many values by the
-//! joint law of Σx and Σx² ([`super::pairs`]); simulation in batches until the caller has what is needed.
+//! Routes, the first that applies: normal laws in closed form or by quadrature (`normal_samples`); laws
+//! on few atoms by exact enumeration (`enumeration`); lattice laws with moderately many values by the
+//! joint law of Σx and Σx² (`pairs`); simulation in batches until the caller has what is needed.
 
 use super::bands::clopper_pearson;
 use super::critical::{CriticalValues, degrees_of_freedom};
@@ -256,9 +256,13 @@ impl Sampler {
     /// Drawing by table moves the law of each value by at most its error in Kolmogorov distance. With all values but
     /// one held fixed, {T > t} is an interval in that one (x̄ − t·s/√n is concave), so its probability moves by at
     /// most twice that; so does {T < −t}, and their complement by the sum of both. Varying the values one by one
-    /// gives 4 × the error of the sum.
+    /// gives 4 × the error of the sum. A relative error of the critical values enters at most once.
     fn error(&self) -> f64 {
-        4.0 * self.drawers.iter().map(|(drawer, _)| drawer.error).sum::<f64>()
+        let critical = match &self.rule {
+            Rule::Fixed(_) => 0.0,
+            Rule::Welch(table) => table.error,
+        };
+        critical + 4.0 * self.drawers.iter().map(|(drawer, _)| drawer.error).sum::<f64>()
     }
 
     fn draw_block(&self, block: u64, counts: &mut Counts) {

@@ -84,6 +84,21 @@ fn joint_law_and_enumeration_agree_on_bernoulli() {
 }
 
 #[test]
+fn poisson_samples_have_an_exact_joint_law() {
+    let law = law(LawSpec::Poisson { rate: 1.3 });
+    let request = mean(&law, 25, 0.025, 0.0);
+    let exact = misses(&request, &never, &Work::new()).unwrap();
+    assert_eq!(exact.route, Route::Lattice);
+    assert!(exact.covered.error < 1e-10, "{exact:?}");
+    let simulated = simulate(&request, &never, &Work::new()).unwrap();
+    for (a, b) in
+        [(exact.low, simulated.low), (exact.high, simulated.high), (exact.covered, simulated.covered)]
+    {
+        assert!((a.value - b.value).abs() <= a.error + b.error, "{a:?} {b:?}");
+    }
+}
+
+#[test]
 fn simulation_agrees_with_enumeration() {
     for (values, weights, n, tail, shift, low, high) in ENUMERATED {
         let law = table(values, weights);
@@ -173,7 +188,7 @@ fn normal_samples_have_the_noncentral_t_law() {
 fn welch_for_normal_groups_agrees_with_simulation() {
     let (first, second) =
         (law(LawSpec::Normal { mean: 5.0, sd: 2.0 }), law(LawSpec::Normal { mean: 1.0, sd: 9.0 }));
-    for (n_first, n_second, shift) in [(5, 3, 0.0), (20, 4, 1.5), (2, 2, 0.0)] {
+    for (n_first, n_second, shift) in [(5, 3, 0.0), (20, 4, 1.5), (2, 2, 0.0), (900, 100, -0.5)] {
         let statistic = Studentized::Difference { first: &first, n_first, second: &second, n_second };
         let request = StudentizedRequest { statistic, ..mean(&first, 2, 0.025, shift) };
         let exact = misses(&request, &never, &Work::new()).unwrap();

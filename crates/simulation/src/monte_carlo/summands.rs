@@ -8,8 +8,9 @@
 //! - continuous pieces: [`super::tabulated`].
 
 use super::alias::{AliasTable, BinomialCount, draw_binomial};
+use super::streams::Stream;
 use super::tabulated::{DRAW_ERROR, TabulatedQuantile};
-use crate::law::{ClosedFamily, ClosedForm, Law, Sampler};
+use crate::law::{ClosedFamily, ClosedForm, Law, Piece, Sampler};
 use rand::Rng;
 use rand_distr::Distribution;
 
@@ -17,6 +18,8 @@ use rand_distr::Distribution;
 const COPIES_PER_COUNT: u64 = 20;
 /// At most so many atoms get a count of their own.
 const COUNTED_ATOMS: usize = 256;
+/// At most so many curved pieces get a table; a law with more is drawn by its own sampler.
+const TABLED_PIECES: usize = 24;
 
 /// Totals of a sample, measured from the mean of the law in units.
 #[derive(Debug, Clone, Copy, PartialEq)]
@@ -50,6 +53,8 @@ enum Part {
     Point(f64),
     /// Atoms in their proportions.
     Points { values: Vec<f64>, table: AliasTable },
+    /// Uniform pieces in their proportions, each as its lower end and its length.
+    Bars { bars: Vec<(f64, f64)>, table: AliasTable },
     /// A continuous piece.
     Stretch(Box<TabulatedQuantile>),
     /// A law that is not in normal form: its own sampler.
@@ -95,7 +100,7 @@ impl SampleDrawer {
 
     /// Draws the totals. `SQUARES` false leaves `squares` and `all_equal` unset, for speed.
     #[inline]
-    pub(crate) fn draw<const SQUARES: bool>(&self, random: &mut impl Rng) -> Totals {
+    pub(crate) fn draw<const SQUARES: bool>(&self, random: &mut Stream) -> Totals {
         let mut totals = Running::default();
         match &self.split {
             Split::One => {
@@ -161,19 +166,30 @@ impl Running {
             _ => {}
         }
     }
+
+    /// Notes draws of a continuous piece: two of them differ with probability 1, and so do one and an atom.
+    #[inline]
+    fn saw_continuous(&mut self, copies: u64) {
+        self.distinct = if copies == 1 && self.distinct == Distinct::Nothing {
+            self.only = f64::NAN;
+            Distinct::One
+        } else {
+            Distinct::Several
+        };
+    }
 }
 
 impl Part {
     fn cost(&self) -> f64 {
         match self {
             Self::Point(_) => 0.0,
-            Self::Points { .. } | Self::Stretch(_) => 1.0,
+            Self::Points { .. } | Self::Bars { .. } | Self::Stretch(_) => 1.0,
             Self::Whole { .. } => 20.0,
         }
     }
 
     #[inline]
-    fn draw<const SQUARES: bool>(&self, copies: u64, random: &mut impl Rng, totals: &mut Running) {
+    fn draw<const SQUARES: bool>(&self, copies: u64, random: &mut Stream, totals: &mut Running) {
         if copies == 0 {
             return;
         }
@@ -198,23 +214,24 @@ impl Part {
                 totals.sum += sum;
                 totals.squares += squares;
             }
-            Self::Stretch(table) => {
+            Self::Bars { bars, table } => {
                 let (mut sum, mut squares) = (0.0, 0.0);
-                table.draw_each(copies, random, |value| {
+                for _ in 0..copies {
+                    let (start, length) = bars[table.draw(random)];
+                    let place = ((random.next_u64() >> 11) as f64 + 0.5) / (1u64 << 53) as f64;
+                    let value = start + place * length;
                     sum += value;
-                    if SQUARES {
-                        squares += value * value;
-                    }
-                });
+                    squares += value * value;
+                }
                 totals.sum += sum;
                 totals.squares += squares;
-                // Two draws of a continuous piece differ with probability 1; so do a draw and an atom.
-                totals.distinct = if copies == 1 && totals.distinct == Distinct::Nothing {
-                    totals.only = f64::NAN;
-                    Distinct::One
-                } else {
-                    Distinct::Several
-                };
+                totals.saw_continuous(copies);
+            }
+            Self::Stretch(table) => {
+                let (sum, squares) = table.totals::<SQUARES>(copies, random);
+                totals.sum += sum;
+                totals.squares += squares;
+                totals.saw_continuous(copies);
             }
             Self::Whole { sampler, center, unit } => {
                 for _ in 0..copies {
@@ -232,7 +249,10 @@ impl Part {
 
 /// Cuts a law into parts with their masses, heaviest first.
 fn parts_of(law: &Law, center: f64, unit: f64, count: u64) -> (Vec<Part>, Vec<f64>) {
-    if law.only_simulation.is_some() || (law.atoms.is_empty() && law.pieces.is_empty()) {
+    let (uniform, curved): (Vec<&Piece>, Vec<&Piece>) =
+        law.pieces.iter().partition(|piece| piece.density.name() == "uniform");
+    let empty = law.atoms.is_empty() && law.pieces.is_empty();
+    if law.only_simulation.is_some() || empty || curved.len() > TABLED_PIECES {
         return (vec![Part::Whole { sampler: Box::new(law.sampler().clone()), center, unit }], vec![1.0]);
     }
     let mut parts = Vec::new();
@@ -247,7 +267,16 @@ fn parts_of(law: &Law, center: f64, unit: f64, count: u64) -> (Vec<Part>, Vec<f6
         let values = atoms.iter().map(|atom| (atom.value - center) / unit).collect();
         parts.push((Part::Points { values, table: AliasTable::new(&masses) }, masses.iter().sum()));
     }
-    for piece in &law.pieces {
+    if !uniform.is_empty() {
+        let masses: Vec<f64> = uniform.iter().map(|piece| piece.mass()).collect();
+        let bar = |piece: &&Piece| {
+            let (low, high) = (piece.image_low(), piece.image_high());
+            ((low - center) / unit, (high - low) / unit)
+        };
+        let bars = uniform.iter().map(bar).collect();
+        parts.push((Part::Bars { bars, table: AliasTable::new(&masses) }, masses.iter().sum()));
+    }
+    for piece in curved {
         let mass = piece.mass();
         if mass > 0.0 {
             parts.push((Part::Stretch(Box::new(TabulatedQuantile::new(piece, center, unit))), mass));

@@ -2,16 +2,17 @@
 //!
 //! **Bands.** Of the risk α = 1 − confidence one half goes to the Dvoretzky–Kiefer–Wolfowitz–Massart band, which
 //! holds for all z at once and so for the Kolmogorov distance and all quantiles; a quarter to Clopper–Pearson
-//! intervals at the `probes` (two per probe: P(Z < z) and P(Z ≤ z)); a quarter to Clopper–Pearson intervals at
-//! all edges of the grid, all lattice points and all listed jumps. Each number gets the common part of the
+//! intervals at the `probes` (two per probe: P(Z < z) and P(Z ≤ z)); a quarter to Chernoff intervals (a little wider,
+//! but in closed form) at all edges of the grid, all lattice points and all listed jumps, shared among them by
+//! Bonferroni's inequality like those at the probes. Each number gets the common part of the
 //! bands that apply. All are exact statements about binomial counts, none relies on a normal approximation. The
-//! error of drawing by table ([`super::tabulated`]) is added to each.
+//! error of drawing by table (`tabulated`) is added to each.
 //!
 //! **Grid.** Only counts in the cells of a fixed grid (one per point for lattice sums) are kept. At a z inside a
 //! cell the distribution function lies between its values at the edges, and the stated error includes that; at
 //! probes and listed jumps both sides are counted exactly.
 
-use super::bands::{Band, clopper_pearson, uniform_band};
+use super::bands::{Band, clopper_pearson, divergence_interval, uniform_band};
 use super::jumps::{Jumps, jumps_of};
 use super::streams::{Purpose, block_stream, for_blocks};
 use super::summands::{ClosedSum, SampleDrawer, natural_unit};
@@ -133,11 +134,14 @@ impl SimulatedSum {
         let share = count as f64 / self.draws.max(1) as f64;
         let half = uniform_band(self.draws, 0.5 * plan.risk);
         let everywhere = Band { low: share - half, high: share + half };
-        let slots = match class {
-            Class::Probe => 2 * plan.probes.len().max(1),
-            Class::Edge => 2 * (plan.layout.length + plan.layout.places.len() + 1),
+        let share_of_risk = |slots: usize| 0.25 * plan.risk / slots as f64;
+        let pointwise = match class {
+            Class::Probe => clopper_pearson(count, self.draws, share_of_risk(2 * plan.probes.len().max(1))),
+            Class::Edge => {
+                let slots = 2 * (plan.layout.length + plan.layout.places.len() + 1);
+                divergence_interval(count, self.draws, share_of_risk(slots))
+            }
         };
-        let pointwise = clopper_pearson(count, self.draws, 0.25 * plan.risk / slots as f64);
         everywhere.and(pointwise).widened(plan.error)
     }
 
@@ -211,7 +215,7 @@ impl SimulatedSum {
     }
 
     fn probability(&self, z: f64, closed: bool) -> Figure {
-        if z == f64::NEG_INFINITY || z == f64::INFINITY {
+        if z.is_infinite() {
             return Figure::bound(if z > 0.0 { 1.0 } else { 0.0 }, 0.0);
         }
         let (low, high, value) = self.counts_at(z, closed);
@@ -226,7 +230,7 @@ impl SimulatedSum {
 
     fn complement(&self, z: f64, closed: bool) -> Figure {
         let below = self.probability(z, closed);
-        if matches!(z, f64::NEG_INFINITY | f64::INFINITY) {
+        if z.is_infinite() {
             return below.map(|value| 1.0 - value);
         }
         // From the counts above, so that a rare tail keeps its digits.
@@ -502,7 +506,7 @@ fn layout_of(jumps: &Jumps, probes: &[f64], reach: f64, tolerance: f64) -> Layou
             let first = ((low.max(-reach) - origin) / span - 0.25).ceil();
             let last = ((high.min(reach) - origin) / span + 0.25).floor();
             let points = last - first + 1.0;
-            if points >= 1.0 && points <= LATTICE_POINTS && *span > 1e4 * tolerance {
+            if (1.0..=LATTICE_POINTS).contains(&points) && *span > 1e4 * tolerance {
                 return Layout::lattice(origin + span * first, *span, points as usize, tolerance);
             }
         }
@@ -530,7 +534,8 @@ impl TermDrawer {
 
     fn error(&self) -> f64 {
         match self {
-            Self::Closed(_) => 1e-12,
+            // The library's Poisson and binomial samplers use constants with ten digits.
+            Self::Closed(_) => 1e-8,
             Self::Copies(copies) => copies.error,
         }
     }

@@ -134,6 +134,18 @@ fn sums_of_incommensurable_atoms_list_their_jumps() {
 }
 
 #[test]
+fn histograms_are_drawn_bar_by_bar() {
+    // n = 1: the distribution function of the histogram itself, linear on each bar.
+    let (edges, weights) = (vec![0.0, 1.0, 1.5, 4.0], vec![2.0, 5.0, 3.0]);
+    let sum = build(&SumSpec::like_summands(law(LawSpec::Histogram { edges, weights }), 1), 100_000);
+    let moments = sum.moments();
+    for (x, p) in [(0.5, 0.1), (1.0, 0.2), (1.25, 0.45), (1.5, 0.7), (2.75, 0.85), (4.0, 1.0)] {
+        assert_near(sum.at_or_below((x - moments.mean) / moments.sd), p, 0.0068);
+    }
+    assert_eq!(sum.jumps(-8.0, 8.0, 10), Some(vec![]));
+}
+
+#[test]
 fn differences_of_two_groups_share_a_lattice() {
     let (one, two) = (law(LawSpec::Bernoulli { p: 0.3 }), law(LawSpec::Bernoulli { p: 0.5 }));
     let (n1, n2) = (6u64, 4u64);

@@ -12,6 +12,8 @@
 //! the draws then satisfies sup|F̃ − F| ≤ [`DRAW_ERROR`] (couple both through U), and the n-fold sum n times as
 //! much, because convolving with a law cannot enlarge a Kolmogorov distance. Callers add that to their bands.
 
+use super::alias::BinomialCount;
+use super::streams::Stream;
 use crate::law::Piece;
 use rand::Rng;
 
@@ -21,25 +23,33 @@ const TOLERANCE: f64 = 2e-9;
 /// Bound on the Kolmogorov distance between the law of one draw and the piece.
 pub(crate) const DRAW_ERROR: f64 = TOLERANCE + 1.2e-10;
 
-/// log₂ of the number of stretches per table.
-const CELL_BITS: u32 = 10;
-const CELLS: usize = 1 << CELL_BITS;
+/// Number of stretches per table.
+const CELLS: usize = 1 << 10;
 /// Stretches of the main table, on each side, that the finer tables take over: 1/32 of the probability.
-const OUTER: usize = CELLS / 32;
-/// Bits of a 32-bit word left for the place inside a stretch.
-const PLACE_BITS: u32 = 32 - CELL_BITS;
-
-/// Coefficients of the polynomial in t ∈ [0, 1]; the first is `NaN` where a stretch must be drawn another way.
+const OUTER: usize = CELLS / PARTS;
+/// Stretches of the finer tables per stretch of the main one.
+const PARTS: usize = 32;
+/// Coefficients of the polynomial in t ∈ [0, 1]; the first is `NaN` where there is none.
 type Cell = [f64; 4];
 const ANOTHER_WAY: Cell = [f64::NAN; 4];
+
+/// Counts of special stretches come from tables for 1, 2, 4, … values up to 2 to this power.
+const COUNT_TABLES: u32 = 20;
 
 /// A piece conditional on itself, drawn by inversion.
 #[derive(Debug, Clone)]
 pub(crate) struct TabulatedQuantile {
     inverse: PieceInverse,
-    middle: Vec<Cell>,
-    lower: Vec<Cell>,
-    upper: Vec<Cell>,
+    /// The stretches of the main table that have a polynomial, as polynomials in 2³²·t minus a half step.
+    plain: Box<[Cell; CELLS]>,
+    /// How many of them there are.
+    plain_count: u32,
+    /// Numbers of the inner stretches without one.
+    bare: Vec<u16>,
+    /// How many of 2ⁱ values fall on outer or bare stretches.
+    special_counts: Vec<BinomialCount>,
+    /// The finer tables: the lower outer stretches counted from below, then the upper ones counted from above.
+    outer: Vec<Cell>,
 }
 
 /// The exact conditional quantile of a piece, of (image − centre)/unit.
@@ -74,8 +84,10 @@ impl PieceInverse {
         y.clamp(self.piece.low, self.piece.high)
     }
 
-    fn image(&self, y: f64) -> f64 {
-        self.shift + self.factor * y
+    /// The value with conditional probability p below it, without a table.
+    #[cold]
+    fn exactly(&self, p: f64, q: f64) -> f64 {
+        self.shift + self.factor * self.family_units(p, q)
     }
 
     /// How far `y` is from conditional probability p (q = 1 − p), in probability.
@@ -137,65 +149,120 @@ fn evaluate(cell: &Cell, t: f64) -> f64 {
     cell[0] + t * (cell[1] + t * (cell[2] + t * cell[3]))
 }
 
+/// The polynomial as one in w = 2³²·t less half a step of w: words w are multiples of `step` on average.
+fn in_words(cell: &Cell, step: f64) -> Cell {
+    const WORD: f64 = 1.0 / 4_294_967_296.0;
+    let [_, c1, c2, c3] = *cell;
+    let t = 0.5 * step * WORD;
+    [
+        evaluate(cell, t),
+        WORD * (c1 + t * (2.0 * c2 + t * 3.0 * c3)),
+        WORD * WORD * (c2 + 3.0 * t * c3),
+        WORD * WORD * WORD * c3,
+    ]
+}
+
 impl TabulatedQuantile {
     /// Tables a piece of positive mass. Draws are (X − `center`)/`unit`.
     pub(crate) fn new(piece: &Piece, center: f64, unit: f64) -> Self {
         let inverse = PieceInverse::new(piece, center, unit);
-        let outer = OUTER as f64 / CELLS as f64;
-        Self {
-            middle: inverse.table(1.0, false, true),
-            lower: inverse.table(outer, false, false),
-            upper: inverse.table(outer, true, false),
-            inverse,
+        let share = OUTER as f64 / CELLS as f64;
+        let mut outer = inverse.table(share, false, false);
+        outer.extend(inverse.table(share, true, false));
+        let cells = inverse.table(1.0, false, true);
+        let (bare, good): (Vec<u16>, Vec<u16>) =
+            (OUTER as u16..(CELLS - OUTER) as u16).partition(|&index| cells[usize::from(index)][0].is_nan());
+        let mut plain = Box::new([[0.0; 4]; CELLS]);
+        for (cell, &index) in plain.iter_mut().zip(&good) {
+            *cell = in_words(&cells[usize::from(index)], good.len() as f64);
         }
+        let q = good.len() as f64 / CELLS as f64;
+        let p = (2 * OUTER + bare.len()) as f64 / CELLS as f64;
+        let special_counts = (0..=COUNT_TABLES).map(|power| BinomialCount::new(1 << power, p, q)).collect();
+        Self { inverse, plain, plain_count: good.len() as u32, bare, special_counts, outer }
     }
 
-    /// Draws `count` times and hands each value to `take`.
+    /// Draws `count` values; their sum and, unless `SQUARES` is false, the sum of their squares.
+    ///
+    /// First how many fall on special stretches; the rest is a loop without branches.
     #[inline]
-    pub(crate) fn draw_each<R: Rng>(&self, count: u64, random: &mut R, mut take: impl FnMut(f64)) {
-        for _ in 0..count / 2 {
-            let word = random.next_u64();
-            let first = self.from_word(word as u32, random);
-            let second = self.from_word((word >> 32) as u32, random);
-            take(first);
-            take(second);
+    pub(crate) fn totals<const SQUARES: bool>(&self, count: u64, random: &mut Stream) -> (f64, f64) {
+        // Two running totals: additions to one need not wait for the other.
+        let (mut sums, mut squares) = ([0.0; 2], [0.0; 2]);
+        let mut add = |which: usize, value: f64| {
+            sums[which] += value;
+            if SQUARES {
+                squares[which] += value * value;
+            }
+        };
+        // A copy of the generator's state lives in registers.
+        let mut own = random.clone();
+        let special = self.draw_special_count(count, &mut own);
+        let plain = count - special;
+        // The high half of word × number of stretches chooses the stretch, the low half the place in it.
+        let draw = |word: u64| {
+            let product = (word & 0xffff_ffff) * u64::from(self.plain_count);
+            let cell = &self.plain[(product >> 32) as usize % CELLS];
+            evaluate(cell, f64::from(product as u32))
+        };
+        for _ in 0..plain / 2 {
+            let word = own.next_u64();
+            add(0, draw(word));
+            add(1, draw(word >> 32));
         }
-        if count % 2 == 1 {
-            let word = random.next_u64();
-            take(self.from_word((word >> 32) as u32, random));
+        if plain % 2 == 1 {
+            add(0, draw(own.next_u64() >> 32));
         }
+        for _ in 0..special {
+            add(1, self.draw_special(&mut own));
+        }
+        *random = own;
+        (sums[0] + sums[1], squares[0] + squares[1])
     }
 
-    #[inline(always)]
-    fn from_word<R: Rng>(&self, word: u32, random: &mut R) -> f64 {
-        const PLACE: f64 = 1.0 / (1u32 << PLACE_BITS) as f64;
-        let index = (word >> PLACE_BITS) as usize;
-        let t = (f64::from(word & ((1 << PLACE_BITS) - 1)) + 0.5) * PLACE;
-        let value = evaluate(&self.middle[index], t);
-        if value.is_nan() { self.another_way(index, random) } else { value }
+    /// How many of `count` values fall on special stretches: the sum of the counts for the binary digits of `count`.
+    #[inline]
+    fn draw_special_count(&self, count: u64, random: &mut Stream) -> u64 {
+        let mut left = count;
+        let mut special = 0;
+        while left >> (COUNT_TABLES + 1) > 0 {
+            special += self.special_counts[COUNT_TABLES as usize].draw(random);
+            left -= 1 << COUNT_TABLES;
+        }
+        while left > 0 {
+            special += self.special_counts[left.trailing_zeros() as usize].draw(random);
+            left &= left - 1;
+        }
+        special
     }
 
-    /// A stretch of the middle table that has no polynomial: a fresh 53-bit place in it, by a finer table or exactly.
-    #[cold]
-    #[inline(never)]
-    fn another_way<R: Rng>(&self, index: usize, random: &mut R) -> f64 {
+    /// A value on an outer or bare stretch: one of equally likely slots, the stretches of the finer tables and as short
+    /// parts of the bare ones, and a 53-bit place in it.
+    #[inline]
+    fn draw_special(&self, random: &mut Stream) -> f64 {
+        let slots = 2 * CELLS + self.bare.len() * PARTS;
+        let product = u128::from(random.next_u64()) * slots as u128;
+        let slot = (product >> 64) as usize;
         // Strictly between 0 and 1.
-        let place = ((random.next_u64() >> 11) as f64 + 0.5) / (1u64 << 53) as f64;
-        let p = (index as f64 + place) / CELLS as f64;
-        let q = ((CELLS - 1 - index) as f64 + (1.0 - place)) / CELLS as f64;
-        let fine = |table: &[Cell], tail: f64| {
-            let u = tail * (CELLS / OUTER * CELLS) as f64;
-            let cell = (u as usize).min(CELLS - 1);
-            evaluate(&table[cell], u - cell as f64)
-        };
-        let value = if index < OUTER {
-            fine(&self.lower, p)
-        } else if index >= CELLS - OUTER {
-            fine(&self.upper, q)
-        } else {
-            f64::NAN
-        };
-        if value.is_nan() { self.inverse.image(self.inverse.family_units(p, q)) } else { value }
+        let place = ((product as u64 >> 11) as f64 + 0.5) / (1u64 << 53) as f64;
+        let value = self.outer.get(slot).map_or(f64::NAN, |cell| evaluate(cell, place));
+        if value.is_nan() { self.draw_exactly(slot, place) } else { value }
+    }
+
+    #[cold]
+    fn draw_exactly(&self, slot: usize, place: f64) -> f64 {
+        let short = (CELLS * PARTS) as f64;
+        if slot < 2 * CELLS {
+            let tail = ((slot % CELLS) as f64 + place) / short;
+            return if slot < CELLS {
+                self.inverse.exactly(tail, 1.0 - tail)
+            } else {
+                self.inverse.exactly(1.0 - tail, tail)
+            };
+        }
+        let (bare, part) = ((slot - 2 * CELLS) / PARTS, (slot - 2 * CELLS) % PARTS);
+        let from_below = (usize::from(self.bare[bare]) * PARTS + part) as f64 + place;
+        self.inverse.exactly(from_below / short, (short - from_below) / short)
     }
 }
 
@@ -228,19 +295,54 @@ mod tests {
         for (name, piece) in examples() {
             let table = TabulatedQuantile::new(&piece, 0.0, 1.0);
             let inverse = &table.inverse;
-            let mut without = 0;
-            for index in OUTER..CELLS - OUTER {
-                if table.middle[index][0].is_nan() {
-                    without += 1;
-                    continue;
-                }
+            let without = table.bare.len();
+            let step = f64::from(table.plain_count);
+            let plain = (OUTER as u16..(CELLS - OUTER) as u16).filter(|index| !table.bare.contains(index));
+            for (cell, index) in table.plain.iter().zip(plain) {
                 for t in [0.0, 0.02, 0.15, 0.39, 0.61, 0.83, 0.99, 1.0] {
-                    let u = (index as f64 + t) / CELLS as f64;
-                    let y = piece.preimage(evaluate(&table.middle[index], t));
+                    let u = (f64::from(index) + t) / CELLS as f64;
+                    let y = piece.preimage(evaluate(cell, t * 4_294_967_296.0 - 0.5 * step));
                     assert!(inverse.miss(y, u, 1.0 - u) <= TOLERANCE, "{name} at {u}");
                 }
             }
             assert!(without <= 8, "{name}: {without} stretches without a polynomial");
+        }
+    }
+
+    #[test]
+    fn totals_are_those_of_the_law() {
+        for (name, piece) in examples() {
+            if name == "lomax" {
+                // No third moment: the mean of squares says nothing.
+                continue;
+            }
+            let moment = |k: i32| {
+                let step = 1.0 / 65_536.0;
+                let at = |u: f64| piece.image(piece.conditional_quantile(u)).powi(k);
+                (0..65_536).map(|i| at((f64::from(i) + 0.5) * step)).sum::<f64>() * step
+            };
+            let (first, second, fourth) = (moment(1), moment(2), moment(4));
+            let table = TabulatedQuantile::new(&piece, 0.0, 1.0);
+            let mut random = block_stream(12, Purpose::Sums, 0);
+            let (mut sum, mut squares) = (0.0, 0.0);
+            for _ in 0..1000 {
+                let totals = table.totals::<true>(301, &mut random);
+                sum += totals.0;
+                squares += totals.1;
+            }
+            let count = 301_000.0f64;
+            let sd = (second / count).sqrt();
+            assert!(
+                (sum / count - first).abs() < 6.0 * sd + 1e-3 * first.abs(),
+                "{name}: {} {first}",
+                sum / count
+            );
+            let sd = (fourth / count).sqrt();
+            assert!(
+                (squares / count - second).abs() < 6.0 * sd + 5e-3 * second,
+                "{name}: {} {second}",
+                squares / count
+            );
         }
     }
 
@@ -250,8 +352,8 @@ mod tests {
             let table = TabulatedQuantile::new(&piece, 0.5, 2.0);
             let mut random = block_stream(11, Purpose::Sums, 0);
             let draws = 300_001u64;
-            let mut values = Vec::new();
-            table.draw_each(draws, &mut random, |value| values.push(0.5 + 2.0 * value));
+            let mut values: Vec<f64> =
+                (0..draws).map(|_| 0.5 + 2.0 * table.totals::<false>(1, &mut random).0).collect();
             values.sort_by(f64::total_cmp);
             let mass = piece.mass();
             let mut largest = 0.0f64;

@@ -85,7 +85,8 @@ impl Tally {
     pub(crate) fn add(&mut self, layout: &Layout, z: f64) {
         let position = match layout.cells {
             Cells::Grid { from, width } => (z - from) / width,
-            Cells::Lattice { first, span } => ((z - first) / span).round(),
+            // Truncation below rounds to the nearest point.
+            Cells::Lattice { first, span } => (z - first) / span + 0.5,
         };
         // Not finite cannot happen for finite laws; an overflow counts as far out on its side.
         let slot = if position >= layout.length as f64 {

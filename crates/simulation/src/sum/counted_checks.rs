@@ -6,7 +6,6 @@ use super::{Method, Side, StandardizedSum, SumError, SumSpec, Term};
 use crate::law::{Atom, ClosedFamily, ClosedForm, Lattice, Law, LawParts, Moments};
 use crate::special::normal;
 use crate::work::Work;
-use std::sync::Arc;
 
 /// Rows `case,k,P(K<=k),P(K>=k)` and `case,kolmogorov,value,k`: mpmath 1.3.0, 20 digits.
 const REFERENCES: &str = include_str!("../../references/counted_sums.csv");
@@ -19,7 +18,7 @@ fn law(atoms: Vec<Atom>, lattice: Option<Lattice>, closed_form: Option<ClosedFor
         excess_kurtosis: None,
         third_absolute_central: None,
     };
-    let inner = LawParts {
+    Law::from_parts(LawParts {
         atoms,
         missing_mass: 0.0,
         pieces: Vec::new(),
@@ -29,8 +28,7 @@ fn law(atoms: Vec<Atom>, lattice: Option<Lattice>, closed_form: Option<ClosedFor
         support: (f64::NEG_INFINITY, f64::INFINITY),
         only_simulation: None,
         warnings: Vec::new(),
-    };
-    Law { inner: Arc::new(inner) }
+    })
 }
 
 fn named(family: ClosedFamily) -> Law {

@@ -347,18 +347,22 @@ pub(crate) struct CumulativeTable {
 }
 
 impl CumulativeTable {
-    /// Cumulates non-negative masses with compensation: relative error ≤ 2 units in the last place beyond that
-    /// of the masses.
+    /// Cumulates masses with compensation: at most 2 units in the last place beyond the errors of the masses.
+    /// Masses may be slightly negative by rounding; the running maximum of the sums is kept, which is monotone and
+    /// no further from the truth than the worst of the sums.
     pub fn new(first: i64, masses: &[f64]) -> Self {
         let mut lower = vec![0.0; masses.len()];
         let mut upper = vec![0.0; masses.len()];
         let mut sum = Compensated::default();
+        let mut most = 0.0;
         for (out, &mass) in lower.iter_mut().zip(masses) {
-            *out = sum.add(mass).min(1.0);
+            most = sum.add(mass).clamp(most, 1.0);
+            *out = most;
         }
-        sum = Compensated::default();
+        (sum, most) = (Compensated::default(), 0.0);
         for (out, &mass) in upper.iter_mut().zip(masses).rev() {
-            *out = sum.add(mass).min(1.0);
+            most = sum.add(mass).clamp(most, 1.0);
+            *out = most;
         }
         Self { first, lower, upper }
     }
@@ -380,7 +384,7 @@ impl CumulativeTable {
     }
 }
 
-/// A running sum of non-negative numbers with compensation (Kahan).
+/// A running sum with compensation (Kahan).
 #[derive(Default, Clone, Copy)]
 pub(crate) struct Compensated {
     sum: f64,

@@ -1,7 +1,7 @@
 //! A density typed as text in `x` on [low, high], normalised here. The grammar is in [`crate::law::expression`].
 //!
 //! The interval is bisected until a 20-node rule and its two halves agree on every stretch to 1e-15 of the
-//! whole; kinks end up between stretches. Refused are negative or undefined values at any node, a total that
+//! whole (probabilities are right to that absolute error, not relatively in the tails); kinks end up between stretches. Refused are negative or undefined values at any node, a total that
 //! does not converge (infinite mass) or vanishes, and singular ends away from 0 that doubles cannot resolve.
 
 use crate::law::Piece;
@@ -11,6 +11,7 @@ use crate::law::expression::Expression;
 use crate::law::form::Form;
 use crate::law::quadrature::{standard_rule, stretch};
 use num_complex::Complex64;
+use rand::RngExt;
 use std::sync::Arc;
 
 /// Most stretches before a density counts as too rough.
@@ -25,6 +26,8 @@ struct Formula {
     /// P(X ≤ end) and P(X > end).
     below: Vec<f64>,
     above: Vec<f64>,
+    /// For draws: a little more than the largest density on each stretch.
+    ceilings: Vec<f64>,
     /// Divides the typed density.
     total: f64,
 }
@@ -107,7 +110,20 @@ impl Formula {
         let below = running(&mut done.iter().map(|stretch| stretch.1));
         let mut above = running(&mut done.iter().rev().map(|stretch| stretch.1));
         above.reverse();
-        Ok(Self { expression, ends, below, above, total })
+        let mut formula = Self { expression, ends, below, above, ceilings: Vec::new(), total };
+        // 20 nodes resolve each stretch to rounding, so what lies between them exceeds them by little.
+        formula.ceilings = formula
+            .ends
+            .windows(2)
+            .map(|pair| {
+                let (half, middle) = (0.5 * (pair[1] - pair[0]), 0.5 * pair[0] + 0.5 * pair[1]);
+                let nodes = standard_rule().iter().map(|&(node, _)| formula.value(middle + half * node));
+                1.05 * nodes
+                    .chain(pair.iter().map(|&end| formula.value(end)).filter(|f| f.is_finite()))
+                    .fold(0.0, f64::max)
+            })
+            .collect();
+        Ok(formula)
     }
 
     /// The stretch that contains x, which lies inside the support.
@@ -260,7 +276,17 @@ impl Density for Formula {
     fn lower_exponential_rate(&self) -> f64 {
         f64::INFINITY
     }
+    /// The stretch by its probability, the place on it by rejection under its ceiling.
     fn sample(&self, random: &mut dyn rand::Rng) -> f64 {
-        super::by_inversion(self, random)
+        let u: f64 = random.random();
+        let index = self.below.partition_point(|&below| below <= u).clamp(1, self.ends.len() - 1) - 1;
+        let (from, to, ceiling) = (self.ends[index], self.ends[index + 1], self.ceilings[index]);
+        for _ in 0..1000 {
+            let x = from + (to - from) * random.random::<f64>();
+            if random.random::<f64>() * ceiling <= self.value(x) {
+                return x;
+            }
+        }
+        0.5 * from + 0.5 * to
     }
 }

@@ -29,7 +29,7 @@ pub(super) fn compile(
 ) -> Option<Form> {
     let (log_mean, log_sd) = match (log_mean, log_sd, mean, sd) {
         (Some(log_mean), Some(log_sd), None, None) => {
-            if !(checks.finite("log_mean", log_mean) & checks.within("log_sd", log_sd, 1e-150, 20.0)) {
+            if !(checks.finite("log_mean", log_mean) & checks.within("log_sd", log_sd, 1e-150, 10.0)) {
                 return None;
             }
             if log_mean.abs() > 690.0 {
@@ -43,10 +43,10 @@ pub(super) fn compile(
                 return None;
             }
             let ratio = sd / mean;
-            if !(1e-150..=1e80).contains(&ratio) {
+            if !(1e-150..=1e21).contains(&ratio) {
                 checks.problem(
                     "sd",
-                    format!("must be between 1e-150 and 1e80 times the mean (got {})", show(sd)),
+                    format!("must be between 1e-150 and 1e21 times the mean (got {})", show(sd)),
                 );
                 return None;
             }

@@ -53,10 +53,8 @@ struct Shape {
 impl Shape {
     fn point(self, tilt: f64, u: f64) -> (Complex64, Complex64) {
         let (sine, cosine) = tilt.sin_cos();
-        let s = Complex64::new(
-            self.center + self.size * (1.0 - sine * u.cosh()),
-            self.size * cosine * u.sinh(),
-        );
+        let s =
+            Complex64::new(self.center + self.size * (1.0 - sine * u.cosh()), self.size * cosine * u.sinh());
         (s, Complex64::new(-self.size * sine * u.sinh(), self.size * cosine * u.cosh()))
     }
 }
@@ -93,7 +91,7 @@ fn samples(
             let mut small = true;
             for (x, peak) in [low, high].into_iter().zip(&mut largest) {
                 let size = (sample.0.re * x).exp() * (sample.1.norm() + sample.2);
-                if !size.is_finite() {
+                if !(size.is_finite() && sample.2.is_finite()) {
                     return None;
                 }
                 *peak = peak.max(size);
@@ -171,15 +169,22 @@ impl Hyperbola {
             let mut rounding = 0.0;
             for node in &nodes {
                 let size = (node.s.re * x).exp();
-                rounding += size * (node.noise + f64::EPSILON * (3.0 + node.s.norm() * x) * node.weight.norm());
+                rounding +=
+                    size * (node.noise + f64::EPSILON * (3.0 + node.s.norm() * x) * node.weight.norm());
             }
             // Beyond the last node the integrand falls doubly exponentially.
-            let last = nodes.last().map_or(0.0, |node| 8.0 * (node.s.re * x).exp() * node.weight.norm() / step);
+            let last =
+                nodes.last().map_or(0.0, |node| 8.0 * (node.s.re * x).exp() * node.weight.norm() / step);
             discretisation + rounding + last + 1e-300
         };
         let log_errors = (error(low).ln(), error(high).ln());
-        (log_errors.0.is_finite() && log_errors.1.is_finite())
-            .then_some(Self { side, low, high, nodes, log_errors })
+        (log_errors.0.is_finite() && log_errors.1.is_finite()).then_some(Self {
+            side,
+            low,
+            high,
+            nodes,
+            log_errors,
+        })
     }
 
     /// The probability of this contour's side and the density of the sum at x.

@@ -10,12 +10,15 @@ use super::summand::OneSidedSum;
 use crate::work::{Cancelled, Work};
 use num_complex::Complex64;
 
-/// Largest ratio of the ends of a range.
-const RATIO: f64 = 8.0;
+/// Largest ratio of the ends of a range: where the law has its bulk, and near the end, where it is a power.
+const RATIO: f64 = 16.0;
+const RATIO_NEAR_END: f64 = 1e5;
 /// Largest change of ln probability over a range.
 const DROP: f64 = 12.0;
-/// ln probability at which a tail is left.
+/// ln probability at which a tail is left, for laws with a moment generating function.
 const FLOOR: f64 = -76.0;
+/// The same for heavy laws.
+const HEAVY_FLOOR: f64 = -48.0;
 /// Farthest argument of heavy tails, in standard deviations above the mean.
 const HEAVY_TOP: f64 = 1e4;
 
@@ -48,10 +51,11 @@ impl From<Cancelled> for Failure {
     }
 }
 
-/// ln D(s) + s·x on the real axis.
+/// ln D(s) + s·x on the real axis; +∞ where D cannot be computed.
 fn log_bound(sum: &OneSidedSum, s: f64, x: f64) -> f64 {
     let pivot = if s > 0.0 { 0.0 } else { center(sum, s) };
-    sum.transform(Complex64::new(s, 0.0), pivot).value.re.max(1e-300).ln() + s * x
+    let transform = sum.transform(Complex64::new(s, 0.0), pivot);
+    if transform.error.is_finite() { transform.value.re.max(1e-300).ln() + s * x } else { f64::INFINITY }
 }
 
 /// Where the cut of the transform is taken to start for a contour that crosses the axis at s.
@@ -107,11 +111,14 @@ fn saddle(sum: &OneSidedSum, side: Side, x: f64, guess: f64) -> (Saddle, f64) {
 }
 
 impl Ladder {
-    /// Ranges from where the lower tail is 1e-33 to where the upper one is, or to 10⁴ standard deviations.
+    /// Ranges from where the lower tail is 1e-33 to where the upper one is; for heavy laws from 1e-20 to 10⁴
+    /// standard deviations.
     pub(super) fn build(sum: &OneSidedSum, work: &Work) -> Result<Self, Failure> {
         let opening = sum.opening.min(if sum.n <= 4.0 { 1.1 } else { 0.7 });
         if opening < 0.25 {
-            return Err(Failure::Refused("a density may not be turned far enough into the complex plane".into()));
+            return Err(Failure::Refused(
+                "a density may not be turned far enough into the complex plane".into(),
+            ));
         }
         let add = |side: Side, saddle: Saddle, range: (f64, f64)| -> Result<Hyperbola, Failure> {
             work.check()?;
@@ -123,6 +130,7 @@ impl Ladder {
                 })
                 .ok_or_else(|| Failure::Refused("no contour with a bounded error was found".into()))
         };
+        let lower_floor = if sum.rate > 0.0 { FLOOR } else { HEAVY_FLOOR };
         let mut descending = Vec::new();
         let middle = sum.mean;
         // Downwards from the mean: the saddle belongs to the upper end of each range.
@@ -130,7 +138,7 @@ impl Ladder {
         let (mut upper_saddle, coordinate) = saddle(sum, Side::Lower, high, guess);
         guess = coordinate;
         let bottom_bound = loop {
-            let mut ratio: f64 = RATIO;
+            let mut ratio: f64 = if high < 0.02 * middle { RATIO_NEAR_END } else { RATIO };
             let (mut low, mut lower_saddle, mut coordinate);
             loop {
                 low = high / ratio;
@@ -142,7 +150,7 @@ impl Ladder {
             }
             descending.push(add(Side::Lower, upper_saddle, (low, high))?);
             (high, upper_saddle, guess) = (low, lower_saddle, coordinate);
-            if upper_saddle.log_bound < FLOOR || low < 1e-290 {
+            if upper_saddle.log_bound < lower_floor || low < 1e-100 {
                 break upper_saddle.log_bound.exp().min(1.0);
             }
             if descending.len() > 400 {
@@ -168,18 +176,23 @@ impl Ladder {
                     }
                     ratio = 1.0 + (ratio - 1.0) * (0.9 * DROP / drop).max(0.2);
                 }
-                rungs.push(add(Side::Upper, lower_saddle, (low, high))?);
+                match add(Side::Upper, lower_saddle, (low, high)) {
+                    Ok(rung) => rungs.push(rung),
+                    Err(Failure::Refused(_)) => break,
+                    Err(cancelled) => return Err(cancelled),
+                }
                 (low, lower_saddle, guess) = (high, upper_saddle, coordinate);
                 if rungs.len() > 400 {
                     return Err(Failure::Refused("the upper tail needs too many contours".into()));
                 }
             }
             top_bound = lower_saddle.log_bound.exp().min(1.0);
-        } else {
+        }
+        if top_bound > 1e-20 {
+            // A heavy law, or one whose transform grows too fast beyond the pole: absolute accuracy only.
             while low < middle + HEAVY_TOP {
                 let high = low * RATIO;
-                let (upper_saddle, coordinate) = saddle(sum, Side::Lower, high, guess);
-                guess = coordinate;
+                let (upper_saddle, _) = saddle(sum, Side::Lower, high, -high.ln());
                 rungs.push(add(Side::Lower, upper_saddle, (low, high))?);
                 low = high;
             }

@@ -66,7 +66,8 @@ fn sum_moments(spec: &SumSpec) -> Result<SumMoments, SumError> {
         sizes.push(sd * term.multiply.abs());
     }
     let largest = sizes.iter().copied().fold(0.0, f64::max);
-    let squares = spec.terms.iter().zip(&sizes).map(|(t, s)| t.count as f64 * (s / largest).powi(2)).sum::<f64>();
+    let squares =
+        spec.terms.iter().zip(&sizes).map(|(t, s)| t.count as f64 * (s / largest).powi(2)).sum::<f64>();
     let sd = largest * squares.sqrt();
     if !(sd > 0.0 && sd.is_finite() && mean.is_finite()) {
         return Err(SumError::NoVariance);
@@ -178,7 +179,10 @@ impl ContourSum {
             return Figure::bound(0.0, 0.0);
         }
         let lower = self.split(z - self.end).lower;
-        Figure::bound((atom + lower.value).min(1.0), lower.error + atom * self.sum.atom_error() + f64::EPSILON * atom)
+        Figure::bound(
+            (atom + lower.value).min(1.0),
+            lower.error + atom * self.sum.atom_error() + f64::EPSILON * atom,
+        )
     }
 
     /// The probability of the end itself, and of what may lie within its rounding.

@@ -117,7 +117,10 @@ impl OneSided {
     /// Rate of the exponential upper tail in standard units of the sum: the transform is analytic for
     /// Re s > −rate.
     fn rate(&self) -> f64 {
-        self.branches.iter().map(|b| b.density.upper_exponential_rate() / b.scale).fold(f64::INFINITY, f64::min)
+        self.branches
+            .iter()
+            .map(|b| b.density.upper_exponential_rate() / b.scale)
+            .fold(f64::INFINITY, f64::min)
     }
 
     /// E e^(−sY) 1{Y > 0} for one copy.
@@ -148,8 +151,7 @@ impl Branch {
         let median = density.quantile_above(0.5 * beyond);
         let far = density.quantile_above((1e-32 * beyond).max(1e-300)).min(1e100) - start;
         let here = density.density(start);
-        let by_hazard =
-            if here > 0.0 && here.is_finite() { beyond / here } else { f64::INFINITY };
+        let by_hazard = if here > 0.0 && here.is_finite() { beyond / here } else { f64::INFINITY };
         let length = (median - start).min(by_hazard);
         if !(length > 0.0 && length.is_finite() && far.is_finite() && scale > 0.0 && scale.is_finite()) {
             return Err("a density has no scale".into());
@@ -210,6 +212,10 @@ impl Branch {
             while steps < 60 && self.density.density(self.start + reach).ln() - turned.re * reach > -80.0 {
                 reach *= 1.4;
                 steps += 1;
+            }
+            if -turned.re * reach > 650.0 {
+                // Beyond the range of doubles.
+                return Approximate { value: Complex64::ZERO, error: f64::INFINITY };
             }
         }
         let top = (reach / r0).ln().max(2.0) + 0.2;
@@ -307,10 +313,16 @@ impl OneSidedSum {
         for summand in &self.summands {
             let part = summand.continuous(s, pivot);
             let whole = part.value + summand.atom;
+            if whole.norm() < 1e-290 && part.error < 1e-290 {
+                return Approximate { value: Complex64::ZERO, error: 1e-290 };
+            }
             let count = summand.count as f64;
             let own = if self.atom > 0.0 { complex_ln_1p(part.value / summand.atom) } else { whole.ln() };
             log += count * own;
             relative += count * (part.error / whole.norm() + 2.0 * ULP * (1.0 + own.norm()));
+        }
+        if relative.is_nan() || relative > 1.0 {
+            return Approximate { value: Complex64::ZERO, error: f64::INFINITY };
         }
         if !(log.re.is_finite() && log.im.is_finite()) {
             return Approximate { value: Complex64::ZERO, error: 1e-300 };
@@ -319,7 +331,10 @@ impl OneSidedSum {
             let value = self.atom * complex_exp_m1(log);
             // The error of the exponent acts on e^log, that of e^log − 1 on the value.
             let whole = self.atom * log.re.exp();
-            return Approximate { value, error: whole * relative + 4.0 * ULP * value.norm() + value.norm() * self.atom_error() };
+            return Approximate {
+                value,
+                error: whole * relative + 4.0 * ULP * value.norm() + value.norm() * self.atom_error(),
+            };
         }
         let value = complex_exp(log);
         Approximate { value, error: value.norm() * (relative + 4.0 * ULP) }

@@ -14,11 +14,13 @@ pub(super) fn distance(sum: &ContourSum) -> Distance {
     // In T's direction; reflecting T and Φ together changes no distance.
     let difference = |z: f64| sum.lower(z, false).value - normal::at_or_below(z);
     let slope = |z: f64| sum.density(z) - normal::density(z);
-    let mut best = Candidate { size: normal::at_or_below(sum.end), error: 4.0 * sum.blur, z: sum.end, below: true };
+    let mut best =
+        Candidate { size: normal::at_or_below(sum.end), error: 4.0 * sum.blur, z: sum.end, below: true };
     if sum.sum.atom > 0.0 {
         let figure = sum.lower(sum.end, false);
         let size = (figure.value - normal::at_or_below(sum.end)).abs();
-        best = best.better(Candidate { size, error: figure.error + 4.0 * sum.blur, z: sum.end, below: false });
+        best =
+            best.better(Candidate { size, error: figure.error + 4.0 * sum.blur, z: sum.end, below: false });
     }
     let grid = grid(sum.end);
     let values: Vec<f64> = grid.iter().map(|z| difference(*z)).collect();
@@ -47,7 +49,8 @@ pub(super) fn distance(sum: &ContourSum) -> Distance {
         }
     }
     // At an end the supremum is approached from one side; inside it is attained.
-    let side = if best.below != (sum.direction < 0.0 && best.z == sum.end) { Side::JustBelow } else { Side::At };
+    let side =
+        if best.below != (sum.direction < 0.0 && best.z == sum.end) { Side::JustBelow } else { Side::At };
     Distance { kolmogorov: Figure::bound(best.size, best.error), at_z: sum.direction * best.z, side }
 }
 
@@ -68,8 +71,7 @@ impl Candidate {
 /// Even in z over the normal law's range, and in powers near the lower end, where a singular density rises fast.
 fn grid(end: f64) -> Vec<f64> {
     let from = end.max(-9.0);
-    let mut grid: Vec<f64> =
-        (1..=POINTS).map(|k| from + (9.0 - from) * (k as f64) / POINTS as f64).collect();
+    let mut grid: Vec<f64> = (1..=POINTS).map(|k| from + (9.0 - from) * (k as f64) / POINTS as f64).collect();
     if end > -9.0 {
         grid.extend((1..200).map(|k| end - end * (-0.12 * f64::from(k)).exp()));
     }

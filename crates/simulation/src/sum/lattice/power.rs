@@ -26,7 +26,7 @@ const REFINED_FROM: f64 = 32.0;
 /// Masses on a window and what is known about their errors.
 #[derive(Debug)]
 pub(crate) struct Masses {
-    /// The masses, none negative.
+    /// The masses; where there is none, rounding may leave a tiny negative number.
     pub values: Vec<f64>,
     /// Bound on the error of the sum of any run of neighbouring masses.
     pub run_error: f64,
@@ -194,11 +194,7 @@ pub(crate) fn masses(
     spectrum[half].im = 0.0;
     let _ =
         backward.process_with_scratch(&mut spectrum, &mut masses, &mut scratch[..backward.get_scratch_len()]);
-    let mut square = 0.0;
-    for mass in &mut masses {
-        *mass = mass.max(0.0);
-        square += *mass * *mass;
-    }
+    let square: f64 = masses.iter().map(|mass| mass * mass).sum();
     let norm_error = 3.0 * U * log_length * square.sqrt();
     let dropped = outside + 1e-19 * (1.0 + length as f64).ln();
     let run_error = scale * 2.0 * run_error + norm_error * (length as f64).sqrt() + dropped;

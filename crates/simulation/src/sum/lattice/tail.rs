@@ -144,22 +144,22 @@ impl Tail {
         let end = if self.sign > 0.0 { first + found.values.len() as i64 - 1 } else { first };
         let mut tails = vec![Figure::bound(0.0, 0.0); length];
         let mut sum = 0.0;
+        // Tails grow inwards; where rounding says otherwise the larger one is no further from the truth.
+        let mut least = 0.0f64;
         let mut k = end;
         loop {
             sum = sum * shrink + found.values[(k - first) as usize];
             let i = (k - near).unsigned_abs() as usize;
             if i < length {
-                // ln(M(θ)ⁿ e^(−θ(k − E S))); both terms are known to a few units in their last places.
+                // ln(M(θ)ⁿ e^(−θ(k − E S))); both terms are known to a few units in their last places. The
+                // recursion rounds twice a step, with a memory of 1/(1 − e^−|θ|) steps.
                 let turned = theta * mean.distance_to(k as f64);
                 let factor = (cumulants.value - turned).exp();
-                let relative =
-                    U * (32.0 + 8.0 * (cumulants.value.abs() + turned.abs()) + 4.0 / damping.max(U));
-                let relative = relative
-                    .min(U * (32.0 + 8.0 * (cumulants.value.abs() + turned.abs()) + 4.0 * size as f64));
-                tails[i] = Figure::bound(
-                    factor * sum,
-                    factor * (found.damped_error + relative * sum) + f64::MIN_POSITIVE,
-                );
+                let memory = (4.0 / damping.max(U)).min(4.0 * size as f64);
+                let relative = U * (32.0 + 8.0 * (cumulants.value.abs() + turned.abs()) + memory);
+                least = least.max(factor * sum);
+                let error = factor * (found.damped_error + relative * sum.abs()) + f64::MIN_POSITIVE;
+                tails[i] = Figure::bound(least.min(1.0), error);
             }
             if k == near {
                 break;

@@ -1,1 +1,0 @@
-//! Laws are tested as laws: one harness over a list of cases.
