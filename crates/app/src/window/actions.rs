@@ -78,13 +78,19 @@ impl Workbench {
             Command::Export => self.ask_export(Export::Png),
             Command::CopySummary => {
                 if let Some((found, ..)) = self.latest() {
-                    let full = self.findings.full.as_ref().filter(|(_, full)| full.report.scenario == found.report.scenario);
+                    let full = self
+                        .findings
+                        .full
+                        .as_ref()
+                        .filter(|(_, full)| full.report.scenario == found.report.scenario);
                     let report = full.map_or(&found.report, |(_, full)| &full.report);
                     ctx.copy_text(summary_paragraph(report));
                     self.say("The summary is on the clipboard.");
                 }
             }
-            Command::CopyPlan => ctx.copy_text(gaussgap_conclusions::words::plan_sentence(self.document.scenario())),
+            Command::CopyPlan => {
+                ctx.copy_text(gaussgap_conclusions::words::plan_sentence(self.document.scenario()))
+            }
             Command::Undo => {
                 self.document.undo();
             }
@@ -134,10 +140,11 @@ impl Workbench {
 
     fn go_to_n(&mut self, ctx: &Context) {
         self.start_page = false;
-        let id = Id::new(("n", 0usize));
+        let id = Id::unique(("n", 0usize));
         ctx.memory_mut(|memory| memory.request_focus(id));
         if let Some(mut state) = egui::TextEdit::load_state(ctx, id) {
-            let all = egui::text::CCursorRange::two(egui::text::CCursor::new(0), egui::text::CCursor::new(40));
+            let all =
+                egui::text::CCursorRange::two(egui::text::CCursor::new(0), egui::text::CCursor::new(40));
             state.cursor.set_char_range(Some(all));
             egui::TextEdit::store_state(ctx, id, state);
         }
