@@ -26,9 +26,13 @@ impl Workbench {
         if asks.end_step {
             self.document.end_step();
         }
-        if asks.cursor.is_some() && asks.cursor != self.cursor {
-            self.cursor = asks.cursor;
-            ctx.request_repaint();
+        // A cursor put by the pointer goes with it; one put by the keyboard stays.
+        if asks.cursor.is_some() || self.cursor_by_pointer {
+            self.cursor_by_pointer = asks.cursor.is_some();
+            if asks.cursor != self.cursor {
+                self.cursor = asks.cursor;
+                ctx.request_repaint();
+            }
         }
         if had_asks {
             ctx.request_repaint();
@@ -114,8 +118,8 @@ impl Workbench {
             Command::SwitchAxis => {
                 self.settings.axis = if self.settings.axis == Axis::Own { Axis::Standard } else { Axis::Own };
             }
-            Command::CursorLeft => self.cursor = Some((self.cursor.unwrap_or(0.0) - 0.05).max(-4.2)),
-            Command::CursorRight => self.cursor = Some((self.cursor.unwrap_or(0.0) + 0.05).min(4.2)),
+            Command::CursorLeft => self.put_cursor((self.cursor.unwrap_or(0.0) - 0.05).max(-4.2)),
+            Command::CursorRight => self.put_cursor((self.cursor.unwrap_or(0.0) + 0.05).min(4.2)),
             Command::NoCursor => self.cursor = None,
             Command::Brightness => {
                 let dark = ctx.theme() == egui::Theme::Dark;
@@ -136,6 +140,11 @@ impl Workbench {
                 }
             }
         }
+    }
+
+    fn put_cursor(&mut self, z: f64) {
+        self.cursor = Some(z);
+        self.cursor_by_pointer = false;
     }
 
     fn go_to_n(&mut self, ctx: &Context) {

@@ -100,7 +100,7 @@ pub fn plain(value: f64) -> String {
 
 /// A whole number with thousands marks where it is long: `12,000`.
 pub fn thousands(value: f64) -> String {
-    if value.fract() != 0.0 || value.abs() >= 1e15 || value.abs() < 1e4 {
+    if value.fract() != 0.0 || value.abs() >= 1e15 || value.abs() < 1e3 {
         return plain(value);
     }
     let digits = format!("{}", value.abs());

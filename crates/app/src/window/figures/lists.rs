@@ -11,7 +11,7 @@ fn list(columns: &[&str], empty: &str) -> Table {
 }
 
 fn verdict(holds: bool) -> &'static str {
-    if holds { "✓ holds" } else { "✗ fails" }
+    if holds { "✓\u{a0}holds" } else { "✗\u{a0}fails" }
 }
 
 /// What else could be done at the planned n, each with its actual figure.
@@ -38,8 +38,8 @@ pub fn rules(view: &View<'_>) -> Table {
     let mut table = list(&["rule", "says", "agrees", "asks for", "source"], empty);
     for rule in current.iter().flat_map(|full| &full.report.rules_of_thumb) {
         let agrees = match rule.agrees {
-            Some(true) => "✓ agrees",
-            Some(false) => "✗ disagrees",
+            Some(true) => "✓\u{a0}agrees",
+            Some(false) => "✗\u{a0}disagrees",
             None => "undecided",
         };
         let asks = rule.n.map_or_else(String::new, |n| format!("n ≥ {}", thousands(n as f64)));

@@ -133,6 +133,7 @@ fn edit_text(ui: &mut Ui, spec: &Field<'_>, entry: &mut Entry) -> Response {
         }
         Look::Card(width) => TextEdit::singleline(&mut entry.text)
             .desired_width(width - 12.0)
+            .min_size(egui::vec2(width - 12.0, 0.0))
             .margin(Margin::symmetric(6, 3))
             .frame(frame.inner_margin(Margin::symmetric(6, 3))),
         Look::Lines(width, rows) => TextEdit::multiline(&mut entry.text)

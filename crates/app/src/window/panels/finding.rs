@@ -68,7 +68,8 @@ pub fn waiting(ui: &mut Ui, now: Circumstances, asks: &mut Asks) {
     let palette = tokens::palette(ui);
     ui.horizontal_wrapped(|ui| {
         ui.spacing_mut().item_spacing.x = 14.0;
-        let words = if now.has_problem { "No finding: this plan cannot be assessed." } else { "Computing …" };
+        let words =
+            if now.has_problem { "No finding: this plan cannot be assessed." } else { "Computing …" };
         ui.label(RichText::new(words).font(tokens::bold(tokens::FINDING)));
         status(ui, Circumstances { has_problem: false, ..now }, palette, asks);
     });
@@ -169,7 +170,7 @@ mod tests {
             last_failing: Some(1311),
             checked: Some(Checked { from: 1, to: 10_000, every_n: true, which: None }),
         };
-        assert_eq!(safe_from_words(&verdict), "Safe from n = 1312 on (every n up to 10,000 checked).");
+        assert_eq!(safe_from_words(&verdict), "Safe from n = 1,312 on (every n up to 10,000 checked).");
         verdict.safe_from = None;
         assert_eq!(
             safe_from_words(&verdict),
