@@ -59,7 +59,9 @@ fn safe_sentence(report: &Report) -> Option<String> {
             format!("Safe from n = {}; the last n that fails is {} ({range}).", whole(safe), whole(failing))
         }
         (Some(safe), None) => format!("Safe from n = {} ({range}).", whole(safe)),
-        (None, _) => format!("Not safe from any n up to {} ({range}).", whole(checked.to)),
+        (None, _) => {
+            format!("Not safe from any n up to {0}: the claim still fails at {0}.", whole(checked.to))
+        }
     })
 }
 
