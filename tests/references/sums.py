@@ -91,6 +91,7 @@ def continuous_distance(cdf, special=(), low=-6, high=6, coarse=None, step=mpf("
             if gap > best[0]:
                 best = (gap, z)
     kinks = sorted([mpf(low)] + [z for z, _, _ in special if low < z < high] + [mpf(high)])
+    peaks = []
     for left, right in zip(kinks, kinks[1:]):
         if right - left < mpf(10) ** -15:
             continue
@@ -103,11 +104,16 @@ def continuous_distance(cdf, special=(), low=-6, high=6, coarse=None, step=mpf("
         count = len(zs) - 1
         gaps = [abs(coarse(z) - phi(z)) for z in zs]
         for i in range(1, count):
-            if gaps[i] >= gaps[i - 1] and gaps[i] >= gaps[i + 1] and gaps[i] > best[0] - mpf("1e-4"):
-                sign = 1 if coarse(zs[i]) > phi(zs[i]) else -1
-                value, z = refine(lambda z: sign * (cdf(z) - phi(z)), zs[i - 1], zs[i], zs[i + 1])
-                if value > best[0]:
-                    best = (value, z)
+            if gaps[i] >= gaps[i - 1] and gaps[i] >= gaps[i + 1]:
+                peaks.append((gaps[i], zs[i - 1 : i + 2]))
+    highest = max([best[0]] + [gap for gap, _ in peaks])
+    for gap, (a, b, c) in peaks:
+        # A peak between grid points stands less than this above them.
+        if gap > highest - mpf("1e-4") and (gap > best[0] - mpf("1e-4") or best[0] < 0):
+            sign = 1 if coarse(b) > phi(b) else -1
+            value, z = refine(lambda z: sign * (cdf(z) - phi(z)), a, b, c)
+            if value > best[0]:
+                best = (value, z)
     return best
 
 
@@ -435,7 +441,7 @@ def weibull(shape, n):
 
 # Lognormal with log-mean 0: L(s) = ∫ phi(y) exp(-s e^(sigma y)) dy along y = real − i·theta/sigma, theta = arg s.
 class Lognormal:
-    def __init__(self, sigma, step=mpf("0.17"), reach=12):
+    def __init__(self, sigma, step=mpf("0.17"), reach=14):
         self.sigma = mpf(sigma)
         self.step = step
         self.ys = [step * i for i in range(-int(reach / step), int(reach / step) + 1)]
