@@ -86,6 +86,17 @@ fn version_help_and_usage_errors() {
 }
 
 #[test]
+fn without_a_display_one_line_names_the_command_that_needs_none() {
+    let plans = Plans::new();
+    for arguments in [&[][..], &["open", "holds.json"], &["--renderer", "cpu"]] {
+        let output = plans.run(arguments);
+        assert_eq!(code(&output), 4);
+        let message = stderr(&output);
+        assert!(message.lines().count() == 1 && message.contains("gaussgap assess"), "{message}");
+    }
+}
+
+#[test]
 fn schemas_are_json_schemas() {
     let plans = Plans::new();
     for document in ["scenario", "report"] {

@@ -317,13 +317,29 @@ fn thinned(
     Ok(Found { safe_from, last_failing, checked, how: Some(how) })
 }
 
+/// The largest n that a simulation within its budget can decide: the number of samples that narrow a band to half
+/// the tolerance, with 4.5 standard errors on each side, must fit into the budget of simulated summands.
+fn simulated_reach(prepared: &Prepared) -> u64 {
+    let up_to = prepared.scenario.search.up_to;
+    let (nominal, missing) = match prepared.scenario.claim {
+        Claim::Interval { level, .. } => (level, 1.0 - level),
+        Claim::Test { significance, .. } => (significance, significance),
+        _ => return up_to,
+    };
+    let allowed = prepared.scenario.tolerance.allowed(nominal);
+    let samples = (9.0 / allowed).powi(2) * missing * (1.0 - missing);
+    let affordable = (SUMMANDS as f64 / samples.max(1.0)) as u64;
+    affordable.max(prepared.total()).clamp(prepared.smallest_n(), up_to.max(prepared.smallest_n()))
+}
+
 /// The search for a simulated claim: a grid from the top down until one n is not shown to hold, then a bisection.
 fn simulated(
     prepared: &Prepared,
     start: Instant,
     judge: &impl Fn(u64) -> Result<Judged, Cancelled>,
 ) -> Result<Found, Cancelled> {
-    let (low, up_to) = (prepared.smallest_n(), prepared.scenario.search.up_to);
+    let low = prepared.smallest_n();
+    let up_to = simulated_reach(prepared);
     let mut which = Vec::new();
     let (mut safe_from, mut last_failing) = (None, None);
     let mut grid = Vec::new();
@@ -355,7 +371,7 @@ fn simulated(
     }
     which.sort_unstable();
     let how = format!(
-        "safe-from was searched by simulation at {} values of n, jointly at the stated confidence",
+        "safe-from was searched by simulation at {} values of n up to {up_to}, jointly at the stated confidence",
         which.len()
     );
     let checked = Checked {

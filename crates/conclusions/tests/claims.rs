@@ -50,9 +50,11 @@ fn safe_from_is_the_brute_force_integer() {
         (json!({"kind": "quantile", "p": 0.9}), 0.06),
     ];
     for law in &laws {
-        for (claim, tolerance) in &claims {
+        let cases =
+            claims.iter().flat_map(|(claim, tolerance)| [(claim, *tolerance), (claim, 1.7 * tolerance)]);
+        for (claim, tolerance) in cases {
             let value = json!({"law": law, "n": 7, "claim": claim, "tolerance": {"absolute": tolerance},
-                "search": {"up_to": 150}});
+                "search": {"up_to": 40}});
             let base = scenario(value.clone());
             let found = report_of(&base, Effort { growth: false, safe_from: true, remedies: false }).verdict;
             let holds = |n: u64| {
@@ -61,13 +63,13 @@ fn safe_from_is_the_brute_force_integer() {
                 let planned = Scenario::from_value(&document).expect("a valid scenario");
                 report_of(&planned, Effort::PLANNED_N).verdict.state == State::Holds
             };
-            let last_failing = (1..=150).rev().find(|n| !holds(*n));
+            let last_failing = (1..=40).rev().find(|n| !holds(*n));
             let checked = found.checked.expect("a search was made");
-            assert!(checked.every_n && checked.to == 150, "{value}: {checked:?}");
+            assert!(checked.every_n && checked.to == 40, "{value}: {checked:?}");
             assert_eq!(found.last_failing, last_failing, "{value}");
             let safe_from = match last_failing {
                 None => Some(1),
-                Some(150) => None,
+                Some(40) => None,
                 Some(last) => Some(last + 1),
             };
             assert_eq!(found.safe_from, safe_from, "{value}");
@@ -188,7 +190,9 @@ fn guarantees_of_a_deviation_are_ordered_and_hold() {
     assert_eq!(needed["Hoeffding"], Some(736));
 }
 
+/// Reads every bundled scenario; prints the findings with their remedies to be read aloud.
 #[test]
+#[ignore = "one bundled scenario takes minutes by inversion without optimization; run with --ignored --nocapture"]
 fn every_bundled_scenario_has_a_finding_and_a_remedy() {
     let folder = std::path::Path::new(env!("CARGO_MANIFEST_DIR")).join("../../scenarios");
     let mut paths = std::fs::read_dir(&folder)
@@ -246,7 +250,7 @@ mod properties {
     }
 
     proptest! {
-        #![proptest_config(ProptestConfig { cases: 60, ..ProptestConfig::default() })]
+        #![proptest_config(ProptestConfig { cases: 16, ..ProptestConfig::default() })]
 
         /// A bound shown next to a distance is never below it.
         #[test]

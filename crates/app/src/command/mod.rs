@@ -8,10 +8,13 @@ mod progress;
 mod status;
 mod summary;
 
+use crate::shell::Renderer;
+use crate::window::{self, WindowRequest};
 use arguments::{Arguments, Command, Document};
 use clap::Parser;
 use status::Status;
 use std::io::Write;
+use std::path::PathBuf;
 use std::process::ExitCode;
 
 /// Runs the program with the arguments it was started with.
@@ -41,8 +44,13 @@ fn print_schema(document: Document) -> Status {
     if written.is_ok() { Status::Holds } else { Status::Failure }
 }
 
-fn open_window(scenario: Option<std::path::PathBuf>, renderer: crate::shell::Renderer) -> Status {
-    let _ = (scenario, renderer);
-    eprintln!("gaussgap: the window is not part of this build; gaussgap assess works without it");
-    Status::Failure
+fn open_window(scenario: Option<PathBuf>, renderer: Renderer) -> Status {
+    match window::run(WindowRequest { scenario, renderer }) {
+        Ok(()) => Status::Holds,
+        Err(reason) => {
+            let line = format!("gaussgap: {reason}; without a window: gaussgap assess SCENARIO.json");
+            let _ = writeln!(std::io::stderr(), "{line}");
+            Status::Failure
+        }
+    }
 }

@@ -26,9 +26,13 @@ impl Workbench {
         if asks.end_step {
             self.document.end_step();
         }
-        if asks.cursor.is_some() && asks.cursor != self.cursor {
-            self.cursor = asks.cursor;
-            ctx.request_repaint();
+        // A cursor put by the pointer goes with it; one put by the keyboard stays.
+        if asks.cursor.is_some() || self.cursor_by_pointer {
+            self.cursor_by_pointer = asks.cursor.is_some();
+            if asks.cursor != self.cursor {
+                self.cursor = asks.cursor;
+                ctx.request_repaint();
+            }
         }
         if had_asks {
             ctx.request_repaint();
@@ -78,13 +82,19 @@ impl Workbench {
             Command::Export => self.ask_export(Export::Png),
             Command::CopySummary => {
                 if let Some((found, ..)) = self.latest() {
-                    let full = self.findings.full.as_ref().filter(|(_, full)| full.report.scenario == found.report.scenario);
+                    let full = self
+                        .findings
+                        .full
+                        .as_ref()
+                        .filter(|(_, full)| full.report.scenario == found.report.scenario);
                     let report = full.map_or(&found.report, |(_, full)| &full.report);
                     ctx.copy_text(summary_paragraph(report));
                     self.say("The summary is on the clipboard.");
                 }
             }
-            Command::CopyPlan => ctx.copy_text(gaussgap_conclusions::words::plan_sentence(self.document.scenario())),
+            Command::CopyPlan => {
+                ctx.copy_text(gaussgap_conclusions::words::plan_sentence(self.document.scenario()))
+            }
             Command::Undo => {
                 self.document.undo();
             }
@@ -108,8 +118,8 @@ impl Workbench {
             Command::SwitchAxis => {
                 self.settings.axis = if self.settings.axis == Axis::Own { Axis::Standard } else { Axis::Own };
             }
-            Command::CursorLeft => self.cursor = Some((self.cursor.unwrap_or(0.0) - 0.05).max(-4.2)),
-            Command::CursorRight => self.cursor = Some((self.cursor.unwrap_or(0.0) + 0.05).min(4.2)),
+            Command::CursorLeft => self.put_cursor((self.cursor.unwrap_or(0.0) - 0.05).max(-4.2)),
+            Command::CursorRight => self.put_cursor((self.cursor.unwrap_or(0.0) + 0.05).min(4.2)),
             Command::NoCursor => self.cursor = None,
             Command::Brightness => {
                 let dark = ctx.theme() == egui::Theme::Dark;
@@ -132,12 +142,18 @@ impl Workbench {
         }
     }
 
+    fn put_cursor(&mut self, z: f64) {
+        self.cursor = Some(z);
+        self.cursor_by_pointer = false;
+    }
+
     fn go_to_n(&mut self, ctx: &Context) {
         self.start_page = false;
-        let id = Id::new(("n", 0usize));
+        let id = Id::unique(("n", 0usize));
         ctx.memory_mut(|memory| memory.request_focus(id));
         if let Some(mut state) = egui::TextEdit::load_state(ctx, id) {
-            let all = egui::text::CCursorRange::two(egui::text::CCursor::new(0), egui::text::CCursor::new(40));
+            let all =
+                egui::text::CCursorRange::two(egui::text::CCursor::new(0), egui::text::CCursor::new(40));
             state.cursor.set_char_range(Some(all));
             egui::TextEdit::store_state(ctx, id, state);
         }

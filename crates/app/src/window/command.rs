@@ -97,7 +97,9 @@ impl Command {
     pub fn tip(self) -> String {
         let found = ALL.iter().find(|(command, ..)| *command == self);
         match found {
-            Some((_, keys, does)) => keys.first().map_or_else(|| (*does).to_owned(), |k| format!("{does} ({})", keys_text(*k))),
+            Some((_, keys, does)) => {
+                keys.first().map_or_else(|| (*does).to_owned(), |k| format!("{does} ({})", keys_text(*k)))
+            }
             None => String::new(),
         }
     }
@@ -107,11 +109,9 @@ impl Command {
 pub fn keys_text(keys: Keys) -> String {
     let Keys(modifiers, key) = keys;
     let mut text = String::new();
-    for (held, name) in [
-        (modifiers.command || modifiers.ctrl, "Ctrl+"),
-        (modifiers.alt, "Alt+"),
-        (modifiers.shift, "Shift+"),
-    ] {
+    for (held, name) in
+        [(modifiers.command || modifiers.ctrl, "Ctrl+"), (modifiers.alt, "Alt+"), (modifiers.shift, "Shift+")]
+    {
         if held {
             text.push_str(name);
         }
@@ -135,10 +135,14 @@ pub fn typed(ctx: &egui::Context) -> Vec<Command> {
     // Shortcuts with more modifiers come first: Ctrl+Shift+Z is not Ctrl+Z.
     let mut list: Vec<(Command, Keys)> =
         ALL.iter().flat_map(|(command, keys, _)| keys.iter().map(|keys| (*command, *keys))).collect();
-    list.sort_by_key(|(_, Keys(modifiers, _))| std::cmp::Reverse(u8::from(modifiers.shift) + u8::from(modifiers.command)));
+    list.sort_by_key(|(_, Keys(modifiers, _))| {
+        std::cmp::Reverse(u8::from(modifiers.shift) + u8::from(modifiers.command))
+    });
     ctx.input_mut(|input| {
         list.into_iter()
-            .filter(|(_, Keys(modifiers, key))| input.consume_shortcut(&KeyboardShortcut::new(*modifiers, *key)))
+            .filter(|(_, Keys(modifiers, key))| {
+                input.consume_shortcut(&KeyboardShortcut::new(*modifiers, *key))
+            })
             .map(|(command, _)| command)
             .collect()
     })

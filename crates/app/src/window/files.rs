@@ -46,7 +46,8 @@ impl Workbench {
             return stem.to_string_lossy().into_owned();
         }
         let title = self.document.scenario().title.clone().unwrap_or_else(|| "plan".to_owned());
-        let plain: String = title.to_lowercase().chars().map(|c| if c.is_alphanumeric() { c } else { '-' }).collect();
+        let plain: String =
+            title.to_lowercase().chars().map(|c| if c.is_alphanumeric() { c } else { '-' }).collect();
         let stem: Vec<&str> = plain.split('-').filter(|part| !part.is_empty()).take(6).collect();
         if stem.is_empty() { "plan".to_owned() } else { stem.join("-") }
     }
@@ -100,15 +101,18 @@ impl Workbench {
             self.fail("The figures do not belong to the present input yet; nothing was written.");
             return;
         }
-        let full = self.findings.full.as_ref().filter(|(_, full)| full.report.scenario == found.report.scenario);
+        let full =
+            self.findings.full.as_ref().filter(|(_, full)| full.report.scenario == found.report.scenario);
         let report = Arc::clone(&full.map_or(found, |(_, full)| full).report);
         let complete = full.is_some();
         let (sender, context) = (self.jobs.0.clone(), self.context.clone());
         let write = move || {
-            let written = bytes(kind, &report).and_then(|bytes| write_whole(&path, &bytes).map_err(|e| e.to_string()));
+            let written =
+                bytes(kind, &report).and_then(|bytes| write_whole(&path, &bytes).map_err(|e| e.to_string()));
             let notice = match written {
                 Ok(()) => {
-                    let note = if complete { "" } else { " (growth, remedies and safe-from were not computed yet)" };
+                    let note =
+                        if complete { "" } else { " (growth, remedies and safe-from were not computed yet)" };
                     Notice { text: format!("Wrote {}{note}.", path.display()), failed: false }
                 }
                 Err(text) => Notice { text, failed: true },
@@ -159,7 +163,8 @@ impl Workbench {
 
 /// Reads a scenario; its data files are read by the worker.
 fn read(path: &Path) -> Result<Scenario, Vec<String>> {
-    let bytes = std::fs::read(path).map_err(|error| vec![format!("{}: cannot be read: {error}", path.display())])?;
+    let bytes =
+        std::fs::read(path).map_err(|error| vec![format!("{}: cannot be read: {error}", path.display())])?;
     let text = String::from_utf8(bytes).map_err(|error| {
         vec![format!("{}: is not UTF-8 text (byte {})", path.display(), error.utf8_error().valid_up_to())]
     })?;
@@ -185,7 +190,9 @@ fn bytes(kind: Export, report: &Report) -> Result<Vec<u8>, String> {
     match kind {
         Export::Png => Ok(page::to_png(report, &PageStyle { scale: 2.0, ..PageStyle::default() })),
         Export::Svg => Ok(page::to_svg(report, &PageStyle::default()).into_bytes()),
-        Export::Json => gaussgap_pages::report::to_json(report).map(String::into_bytes).map_err(|e| e.to_string()),
+        Export::Json => {
+            gaussgap_pages::report::to_json(report).map(String::into_bytes).map_err(|e| e.to_string())
+        }
         Export::Csv => Ok(gaussgap_pages::curves::to_csv(report)),
     }
 }

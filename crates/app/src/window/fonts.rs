@@ -12,7 +12,8 @@ pub fn install(ctx: &egui::Context) {
     fonts.font_data.insert("regular".to_owned(), Arc::new(FontData::from_static(REGULAR)));
     fonts.font_data.insert("bold".to_owned(), Arc::new(FontData::from_static(BOLD)));
     let fallback = fonts.families.get(&FontFamily::Proportional).cloned().unwrap_or_default();
-    let with = |first: &str| std::iter::once(first.to_owned()).chain(fallback.iter().cloned()).collect::<Vec<_>>();
+    let with =
+        |first: &str| std::iter::once(first.to_owned()).chain(fallback.iter().cloned()).collect::<Vec<_>>();
     fonts.families.insert(FontFamily::Proportional, with("regular"));
     fonts.families.insert(FontFamily::Name("bold".into()), with("bold"));
     ctx.set_fonts(fonts);

@@ -43,7 +43,8 @@ pub fn run(request: WindowRequest) -> Result<(), String> {
         .with_inner_size([1400.0, 900.0])
         .with_min_inner_size([480.0, 360.0])
         .with_drag_and_drop(true);
-    let make: shell::MakeInterface = Box::new(move |_| {
+    let make: shell::MakeInterface = Box::new(move |context| {
+        Workbench::prepare(context);
         let mut workbench = Workbench::new(session::load(), Arc::new(gaussgap_conclusions::assess));
         if let Some(path) = &request.scenario {
             workbench.open_file(path);

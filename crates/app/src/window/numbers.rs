@@ -5,24 +5,26 @@
 /// The message of an error names what was expected and what was found.
 pub fn read_real(text: &str) -> Result<f64, String> {
     let mut compact: String = text.trim().replace(['\u{2212}', '\u{2013}'], "-");
-    let mut factor = 1.0;
-    if let Some(rest) = compact.strip_suffix('%') {
-        compact = rest.trim_end().to_owned();
-        factor = 0.01;
+    let percent = compact.ends_with('%');
+    if percent {
+        compact = compact.trim_end_matches('%').trim_end().to_owned();
     }
     if compact.is_empty() {
         return Err("expected a number (nothing typed)".to_owned());
     }
     let digits = without_thousands_marks(&compact).ok_or_else(|| unreadable(text))?;
-    let value: f64 = match digits.parse() {
-        Ok(value) if digits.chars().any(|c| c.is_ascii_digit()) => value,
+    // 99.9 % is the double nearest 0.999, not a hundredth of the double nearest 99.9.
+    let shifted =
+        if percent && !digits.contains(['e', 'E']) { format!("{digits}e-2") } else { digits.clone() };
+    let scale = if percent && shifted == digits { 100.0 } else { 1.0 };
+    let value: f64 = match shifted.parse::<f64>() {
+        Ok(value) if digits.chars().any(|c| c.is_ascii_digit()) => value / scale,
         _ => return Err(unreadable(text)),
     };
     if !value.is_finite() {
         return Err(format!("too large for a number (found “{}”)", text.trim()));
     }
-    // Dividing by 100 rounds 2.5 % to the double nearest 0.025, as the decimal would.
-    Ok(if factor == 1.0 { value } else { value / 100.0 })
+    Ok(value)
 }
 
 fn unreadable(text: &str) -> String {
@@ -61,7 +63,7 @@ fn without_thousands_marks(text: &str) -> Option<String> {
 /// Without a per cent sign, numbers below 1 are shares and numbers from 1 on are per cent.
 pub fn read_percent(text: &str) -> Result<f64, String> {
     let value = read_real(text)?;
-    Ok(if text.contains('%') || value < 1.0 { value } else { value / 100.0 })
+    if text.contains('%') || value < 1.0 { Ok(value) } else { read_real(&format!("{text}%")) }
 }
 
 /// Reads a whole number from `low` to `high`.
@@ -93,16 +95,12 @@ pub fn read_list(text: &str) -> Result<Vec<f64>, String> {
 /// A number as a field shows it for editing: the shortest text that reads back to the same double.
 pub fn plain(value: f64) -> String {
     let size = value.abs();
-    if size != 0.0 && !(1e-4..1e15).contains(&size) {
-        format!("{value:e}")
-    } else {
-        format!("{value}")
-    }
+    if size != 0.0 && !(1e-4..1e15).contains(&size) { format!("{value:e}") } else { format!("{value}") }
 }
 
 /// A whole number with thousands marks where it is long: `12,000`.
 pub fn thousands(value: f64) -> String {
-    if value.fract() != 0.0 || value.abs() >= 1e15 || value.abs() < 1e4 {
+    if value.fract() != 0.0 || value.abs() >= 1e15 || value.abs() < 1e3 {
         return plain(value);
     }
     let digits = format!("{}", value.abs());
@@ -256,7 +254,8 @@ mod tests {
             assert_eq!(shown(value, digits), text);
         }
         assert_eq!(thousands(1_234_567.0), "1,234,567");
-        assert_eq!(with_error(0.92134, 0.0002), "0.9213 ± 0.0002");
+        // One digit more than the error has, so that rounding adds nothing to it.
+        assert_eq!(with_error(0.921_344, 0.0002), "0.92134 ± 0.0002");
         assert_eq!(with_error(0.5, 1e-13), "0.5");
     }
 

@@ -105,7 +105,8 @@ pub mod dash {
     /// The edge of the tolerance.
     pub const TOLERANCE: &[f32] = &[1.5, 2.5];
     /// The four pins.
-    pub const GHOSTS: [&[f32]; 4] = [&[12.0, 3.0], &[5.0, 2.0, 1.0, 2.0], &[3.0, 5.0], &[8.0, 2.0, 2.0, 2.0, 2.0, 2.0]];
+    pub const GHOSTS: [&[f32]; 4] =
+        [&[12.0, 3.0], &[5.0, 2.0, 1.0, 2.0], &[3.0, 5.0], &[8.0, 2.0, 2.0, 2.0, 2.0, 2.0]];
 }
 
 /// Distance between related things.
@@ -119,7 +120,7 @@ pub const NARROW: f32 = 820.0;
 /// Narrowest useful figure.
 pub const FIGURE_WIDTH: f32 = 318.0;
 /// Lowest useful figure.
-pub const FIGURE_HEIGHT: f32 = 232.0;
+pub const FIGURE_HEIGHT: f32 = 200.0;
 /// Width of lines that carry meaning.
 pub const LINE: f32 = 1.8;
 /// Corner radius of everything.
@@ -165,6 +166,7 @@ pub fn install(ctx: &egui::Context) {
         spacing.indent = 14.0;
         spacing.combo_width = 60.0;
         spacing.scroll.floating = false;
+        spacing.scroll.foreground_color = false;
         spacing.scroll.bar_width = 7.0;
         spacing.scroll.bar_inner_margin = 3.0;
         spacing.scroll.bar_outer_margin = 0.0;
@@ -189,8 +191,10 @@ fn visuals(palette: &Palette, base: Visuals) -> Visuals {
     visuals.error_fg_color = palette.fails;
     visuals.window_corner_radius = CornerRadius::same(CORNER + 1);
     visuals.menu_corner_radius = corner;
-    visuals.window_shadow = Shadow { offset: [0, 6], blur: 18, spread: 0, color: Color32::from_black_alpha(70) };
-    visuals.popup_shadow = Shadow { offset: [0, 3], blur: 9, spread: 0, color: Color32::from_black_alpha(50) };
+    visuals.window_shadow =
+        Shadow { offset: [0, 6], blur: 18, spread: 0, color: Color32::from_black_alpha(70) };
+    visuals.popup_shadow =
+        Shadow { offset: [0, 3], blur: 9, spread: 0, color: Color32::from_black_alpha(50) };
     visuals.window_fill = palette.card;
     visuals.window_stroke = Stroke::new(1.0, palette.line);
     visuals.panel_fill = palette.paper;
@@ -214,6 +218,10 @@ fn visuals(palette: &Palette, base: Visuals) -> Visuals {
         widget.corner_radius = corner;
         widget.expansion = 0.0;
     }
+    // Rails and scroll handles are drawn with the strong fill, buttons with the weak one.
+    widgets.inactive.bg_fill = palette.line;
+    widgets.hovered.bg_fill = palette.muted;
+    widgets.active.bg_fill = palette.muted;
     widgets.active.bg_stroke = Stroke::new(2.0, palette.accent);
     visuals
 }

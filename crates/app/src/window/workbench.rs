@@ -65,6 +65,7 @@ pub struct Workbench {
     pub(super) fields: Fields,
     pub(super) board: Board,
     pub(super) cursor: Option<f64>,
+    pub(super) cursor_by_pointer: bool,
     pub(super) dialog: Option<Dialog>,
     pub(super) notice: Option<Notice>,
     pub(super) start_page: bool,
@@ -100,6 +101,7 @@ impl Workbench {
             fields: Fields::default(),
             board: Board::default(),
             cursor: None,
+            cursor_by_pointer: false,
             dialog: None,
             notice: None,
             start_page: !has_plan,
@@ -115,6 +117,12 @@ impl Workbench {
             window_title: String::new(),
             applied: None,
         }
+    }
+
+    /// Gives a drawing context the faces and styles of the window; needed once, before the first frame.
+    pub fn prepare(ctx: &egui::Context) {
+        tokens::install(ctx);
+        ctx.options_mut(|options| options.zoom_with_keyboard = false);
     }
 
     /// Keeps the session in its file when the window closes.
@@ -157,10 +165,9 @@ impl Workbench {
     pub fn logic(&mut self, ctx: &egui::Context) {
         if self.worker.is_none() {
             let context = ctx.clone();
-            self.worker = Some(Worker::new(Arc::clone(&self.engine), Arc::new(move || context.request_repaint())));
+            self.worker =
+                Some(Worker::new(Arc::clone(&self.engine), Arc::new(move || context.request_repaint())));
             self.context = Some(ctx.clone());
-            tokens::install(ctx);
-            ctx.options_mut(|options| options.zoom_with_keyboard = false);
         }
         self.appearance(ctx);
         self.seconds = ctx.input(|input| input.time);
@@ -319,7 +326,8 @@ impl Workbench {
                     if self.show_cards {
                         self.cards(ui, view.as_ref(), asks);
                     } else {
-                        let height = (ui.ctx().content_rect().height() - 90.0).max(tokens::FIGURE_HEIGHT * 1.2);
+                        let height =
+                            (ui.ctx().content_rect().height() - 90.0).max(tokens::FIGURE_HEIGHT * 1.2);
                         let size = egui::vec2(ui.available_width(), height);
                         ui.allocate_ui(size, |ui| {
                             ui.set_min_size(size);
@@ -331,25 +339,33 @@ impl Workbench {
             return;
         }
         Panel::top("plan").frame(strip(2, 6)).show(ui, |ui| self.plan_and_finding(ui, view.as_ref(), asks));
-        Panel::left("cards").frame(strip(8, 6)).resizable(false).exact_size(tokens::CARDS_WIDTH).show(ui, |ui| {
-            ScrollArea::vertical().id_salt("cards").auto_shrink(false).show(ui, |ui| {
-                self.cards(ui, view.as_ref(), asks);
-            });
-        });
+        Panel::left("cards").frame(strip(8, 6)).resizable(false).exact_size(tokens::CARDS_WIDTH).show(
+            ui,
+            |ui| {
+                ScrollArea::vertical().id_salt("cards").auto_shrink(false).show(ui, |ui| {
+                    self.cards(ui, view.as_ref(), asks);
+                });
+            },
+        );
         CentralPanel::default().frame(strip(6, 8)).show(ui, |ui| self.board_panel(ui, view.as_ref(), asks));
     }
 
     fn plan_and_finding(&mut self, ui: &mut Ui, view: Option<&View<'_>>, asks: &mut Asks) {
         let near = view.and_then(|view| view.shown.own_units);
-        plan::show(ui, &mut self.fields, &Arc::clone(self.document.scenario()), near, &self.findings.problems, asks);
+        plan::show(
+            ui,
+            &mut self.fields,
+            &Arc::clone(self.document.scenario()),
+            near,
+            &self.findings.problems,
+            asks,
+        );
         ui.add_space(2.0);
         ui.separator();
         let now = self.circumstances();
         match view {
             Some(view) => finding::show(ui, view, now, asks),
-            None => {
-                ui.label(RichText::new("Computing …").font(tokens::bold(tokens::FINDING)));
-            }
+            None => finding::waiting(ui, now, asks),
         }
         if let Some(message) = &self.findings.broken {
             finding::mistake(ui, message);
@@ -405,7 +421,10 @@ impl Workbench {
                         Some(view) => finding::method(view),
                         None => format!("gaussgap {}", env!("CARGO_PKG_VERSION")),
                     };
-                    ui.add(egui::Label::new(RichText::new(words).size(tokens::SMALL).color(palette.muted)).truncate());
+                    ui.add(
+                        egui::Label::new(RichText::new(words).size(tokens::SMALL).color(palette.muted))
+                            .truncate(),
+                    );
                 }
             });
         });

@@ -30,10 +30,17 @@ pub(crate) fn edgeworth(shape: Shape, z: f64) -> f64 {
     normal::at_or_below(z) - normal::density(z) * (g * he2 / 6.0 + k * he3 / 24.0 + g * g * he5 / 72.0)
 }
 
-/// A bound on the slope of [`edgeworth`]: the maxima of φ|He_k| are 0.3990, 0.5507, 1.1969, 5.9842 for k = 0, 3, 4, 6.
-pub(crate) fn edgeworth_slope(shape: Shape) -> f64 {
+/// A bound on the slope of [`edgeworth`] on [a, b]: its derivative is φ{1 + γ He₃/6 + κ He₄/24 + γ² He₆/72}, where φ
+/// is largest at the point nearest to 0 and the polynomials, with all signs positive, at the farthest.
+pub(crate) fn edgeworth_slope(shape: Shape, a: f64, b: f64) -> f64 {
     let Shape { skewness: g, excess_kurtosis: k } = shape;
-    0.3990 + 0.5507 * g.abs() / 6.0 + 1.1969 * k.abs() / 24.0 + 5.9842 * g * g / 72.0
+    let nearest = if a <= 0.0 && b >= 0.0 { 0.0 } else { a.abs().min(b.abs()) };
+    let z = a.abs().max(b.abs());
+    let z2 = z * z;
+    let he3 = z * (z2 + 3.0);
+    let he4 = z2 * z2 + 6.0 * z2 + 3.0;
+    let he6 = z2 * z2 * z2 + 15.0 * z2 * z2 + 45.0 * z2 + 15.0;
+    normal::density(nearest) * (1.0 + g.abs() * he3 / 6.0 + k.abs() * he4 / 24.0 + g * g * he6 / 72.0)
 }
 
 /// The two-term Edgeworth approximation of P(Z ≤ z) at half a lattice step beyond an atom, `z` being that point.

@@ -8,6 +8,10 @@ use crate::words::nouns::with_unit;
 use crate::words::numbers::{number_to, percent};
 use gaussgap_simulation::law::LawSpec;
 use gaussgap_simulation::work::{Cancelled, Work};
+use std::time::{Duration, Instant};
+
+/// After this long no further cap is tried.
+const ALLOWED: Duration = Duration::from_secs(2);
 
 /// Shares of the law left untouched, the mildest cap first.
 const SHARES: [f64; 3] = [0.999, 0.99, 0.95];
@@ -28,18 +32,26 @@ pub(super) fn remedies(prepared: &Prepared, work: &Work) -> Result<Vec<Remedy>, 
         return Ok(Vec::new());
     }
     let moments = law.moments;
-    let (lower, upper) = law.tail_indices();
+    let (upper, lower) = law.tail_indices();
     let downwards = match moments.skewness {
         Some(skewness) if skewness.abs() < LEAST_SKEWNESS => return Ok(Vec::new()),
         Some(skewness) => skewness < 0.0,
         None => lower < upper,
     };
+    let start = Instant::now();
     let mut tried = Vec::new();
     for share in SHARES {
         work.check()?;
+        if start.elapsed() > ALLOWED {
+            break;
+        }
         let exact = if downwards { law.quantile_above(share) } else { law.quantile(share) };
         // A limit that can be stated: three significant digits.
         let limit = format!("{exact:.2e}").parse::<f64>().unwrap_or(exact);
+        // A limit at or beyond the end of the law caps nothing.
+        if if downwards { limit <= law.support.0 } else { limit >= law.support.1 } {
+            continue;
+        }
         let (low, high) = if downwards { (Some(limit), None) } else { (None, Some(limit)) };
         let capped = LawSpec::Cap { law: Box::new(spec.clone()), low, high };
         let Ok(capped) = capped.compile() else { continue };

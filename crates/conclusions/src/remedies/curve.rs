@@ -8,7 +8,7 @@ use gaussgap_simulation::figure::{Basis, Figure};
 use gaussgap_simulation::sum::StandardizedSum;
 
 /// Cells of the search for the largest gap.
-const CELLS: usize = 512;
+const CELLS: usize = 256;
 
 /// Beyond this |z| both laws are bounded by their tails.
 const REACH: f64 = 7.0;
@@ -19,7 +19,7 @@ pub(super) fn remedies(prepared: &Prepared, sum: &dyn StandardizedSum) -> Vec<Re
     let mut rows = Vec::new();
     let moments = sum.moments();
     if let (Some(skewness), Some(excess_kurtosis)) = (moments.skewness, moments.excess_kurtosis) {
-        let left = largest_gap(sum, Shape { skewness, excess_kurtosis });
+        let left = largest_gap(sum, Shape { skewness, excess_kurtosis }, (allowed / 20.0).clamp(1e-4, 1e-2));
         let steps = if sum.lattice_span().is_some() { "; the steps of the law remain" } else { "" };
         let note = format!("the largest gap that is left, both sides of every step{steps}");
         rows.push(near("Edgeworth expansion, two terms", left, 0.0, allowed, note));
@@ -35,11 +35,9 @@ pub(super) fn remedies(prepared: &Prepared, sum: &dyn StandardizedSum) -> Vec<Re
 /// sup |P(Z ≤ z) − E(z)| with E the two-term expansion.
 ///
 /// On a cell [a, b] the law F grows, so that F − E lies between F(a) − max E and F(b−) − min E, and with the slope of
-/// E bounded by L the supremum exceeds the values at the ends by at most L(b − a). Cells whose bound exceeds the
-/// largest value found so far are halved until they are 1e-4/L wide; that is the stated error.
-fn largest_gap(sum: &dyn StandardizedSum, shape: Shape) -> Figure {
-    let slope = edgeworth_slope(shape);
-    let smallest = 1e-4 / slope;
+/// E bounded there by L the supremum exceeds the values at the ends by at most L(b − a). Cells whose bound exceeds
+/// the largest value found so far are halved until that excess is below `fine`; this is the stated error.
+fn largest_gap(sum: &dyn StandardizedSum, shape: Shape, fine: f64) -> Figure {
     let gap = |z: f64| {
         let expansion = edgeworth(shape, z);
         let (at, below) = (sum.at_or_below(z), sum.below(z));
@@ -54,7 +52,8 @@ fn largest_gap(sum: &dyn StandardizedSum, shape: Shape) -> Figure {
         .map(|index| (edges[index], edges[index + 1], values[index].0, values[index + 1].0))
         .collect::<Vec<_>>();
     while let Some((a, b, at_a, at_b)) = cells.pop() {
-        if b - a <= smallest || at_a.max(at_b) + slope * (b - a) <= largest {
+        let excess = edgeworth_slope(shape, a, b) * (b - a);
+        if excess <= fine || at_a.max(at_b) + excess <= largest {
             continue;
         }
         let middle = 0.5 * (a + b);
@@ -68,5 +67,5 @@ fn largest_gap(sum: &dyn StandardizedSum, shape: Shape) -> Figure {
     let low = sum.below(-REACH).value + edgeworth(shape, -REACH).abs();
     let high = sum.above(REACH).value + (1.0 - edgeworth(shape, REACH)).abs();
     let basis = sum.at_or_below(0.0).basis;
-    Figure { value: largest.max(low).max(high), error: error + 1e-4, basis }
+    Figure { value: largest.max(low).max(high), error: error + fine, basis }
 }

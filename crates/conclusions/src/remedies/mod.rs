@@ -30,7 +30,7 @@ const REMEDY_SHARE: f64 = 0.1;
 const MOST_SIMULATED: u32 = 8;
 
 /// Simulated summands of one remedy.
-const SUMMANDS: u64 = 60_000_000;
+const SUMMANDS: u64 = 12_000_000;
 
 /// Every remedy for the claim, the cheapest for the user first: those that change only the arithmetic, then those
 /// that change the plan, then those that change what is estimated.
@@ -85,13 +85,24 @@ fn claim_with(
     counts: &[u64],
     work: &Work,
 ) -> Result<Option<ClaimFacts>, Cancelled> {
+    claim_spending(SUMMANDS, prepared, laws, counts, work)
+}
+
+/// The same with another budget of simulated summands.
+fn claim_spending(
+    summands: u64,
+    prepared: &Prepared,
+    laws: &[Law],
+    counts: &[u64],
+    work: &Work,
+) -> Result<Option<ClaimFacts>, Cancelled> {
     let changed = Prepared { scenario: prepared.scenario, laws: laws.to_vec(), planned: counts.to_vec() };
     let result = if is_studentized(&prepared.scenario.claim) {
         let n = counts.iter().sum::<u64>().max(1);
         let budget = StudentizedBudget {
-            draws: prepared.scenario.method.draws.min((SUMMANDS / n).max(2000)),
+            draws: prepared.scenario.method.draws.min((summands / n).max(2000)),
             share: REMEDY_SHARE / f64::from(MOST_SIMULATED),
-            precision: 0.2,
+            precision: 0.5,
         };
         evaluate_studentized(&changed, laws, counts, &budget, work).map(|(facts, _)| facts)
     } else {
@@ -109,11 +120,16 @@ fn claim_with(
 fn more(prepared: &Prepared, verdict: &Verdict, work: &Work) -> Result<Option<Remedy>, Cancelled> {
     let Some(safe) = verdict.safe_from.filter(|safe| *safe > prepared.total()) else { return Ok(None) };
     let Some(counts) = prepared.counts_at(safe) else { return Ok(None) };
-    let Some(facts) = claim_with(prepared, &prepared.laws, &counts, work)? else { return Ok(None) };
+    // As many draws as the search spent on it, lest it look less certain here than there.
+    let spent = 10 * SUMMANDS;
+    let Some(facts) = claim_spending(spent, prepared, &prepared.laws, &counts, work)? else {
+        return Ok(None);
+    };
     let what = match prepared.scenario.source {
         Source::Like { .. } => format!("take n = {}", whole(safe)),
         _ => format!("take {} in all, in the same proportions", whole(safe)),
     };
     let note = format!("{} more than planned", whole(safe - prepared.total()));
-    Ok(Some(from_facts(what, &facts, note)))
+    // The search has shown that it holds there.
+    Ok(Some(Remedy { holds: true, ..from_facts(what, &facts, note) }))
 }

@@ -26,7 +26,7 @@ use rayon::prelude::*;
 const BLOCK: u64 = 1024;
 
 /// Most and fewest samples.
-const MOST_SAMPLES: u64 = 400_000;
+const MOST_SAMPLES: u64 = 100_000;
 const FEWEST_SAMPLES: u64 = 4 * BLOCK;
 
 /// The rows, for an interval for the mean of like summands with estimated spread.

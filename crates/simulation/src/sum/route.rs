@@ -73,20 +73,27 @@ fn has_variance(spec: &SumSpec) -> Result<(), SumError> {
     }
 }
 
-/// Up to this many summands a deformed contour is tried before the transform, which then decays slowly.
-const FEW_SUMMANDS: u64 = 30;
+/// While no more than this many summands are expected to come from the continuous part, a deformed contour is
+/// tried before the transform, which then decays slowly.
+const FEW_SUMMANDS: f64 = 30.0;
+
+/// How many summands are expected to come from the continuous parts of their laws.
+fn continuous_summands(spec: &SumSpec) -> f64 {
+    let share = |term: &Term| 1.0 - term.law.atoms.iter().map(|atom| atom.mass).sum::<f64>();
+    spec.terms.iter().map(|term| term.count as f64 * share(term)).sum()
+}
 
 fn invert(spec: &SumSpec, method: &Method, work: &Work) -> Built {
-    let n: u64 = spec.terms.iter().map(|term| term.count).sum();
+    let few = continuous_summands(spec) <= FEW_SUMMANDS;
     let contour = || boxed(ContourSum::build(spec, method, work));
-    if n <= FEW_SUMMANDS
+    if few
         && let decided @ (Ok(_) | Err(SumError::Cancelled(_) | SumError::NoVariance)) = contour()
     {
         return decided;
     }
     // The transform takes every law, so its reason is the one that tells something.
     match boxed(InversionSum::build(spec, method, work)) {
-        Err(SumError::NotAvailable { route, reason }) if n > FEW_SUMMANDS => match contour() {
+        Err(SumError::NotAvailable { route, reason }) if !few => match contour() {
             Err(SumError::NotAvailable { .. }) => Err(SumError::NotAvailable { route, reason }),
             decided => decided,
         },

@@ -47,7 +47,12 @@ fn rows(view: &View<'_>) -> Vec<Row> {
         miss("lies above the mean", claim.nominal_miss_high, claim.miss_high);
     }
     if let (Some(normal), actual) = (claim.normal_quantile, claim.actual_quantile) {
-        let unit = view.scenario.quantity.as_ref().and_then(|q| q.unit.as_deref()).map_or_else(String::new, |u| format!(", {u}"));
+        let unit = view
+            .scenario
+            .quantity
+            .as_ref()
+            .and_then(|q| q.unit.as_deref())
+            .map_or_else(String::new, |u| format!(", {u}"));
         miss(&format!("quantile{unit}"), Some(normal), actual);
     }
     rows
@@ -58,29 +63,37 @@ pub fn draw(ui: &mut Ui, rect: Rect, view: &View<'_>) -> Asked {
     let palette = tokens::palette(ui);
     let painter = ui.painter().with_clip_rect(rect.intersect(ui.clip_rect()));
     let rows = rows(view);
-    let height = (rect.height() / rows.len().max(1) as f32).min(86.0);
+    let height = (rect.height() / rows.len().max(1) as f32).min(72.0);
     for (index, row) in rows.iter().enumerate() {
         let top = rect.top() + height * index as f32;
         let (left, right) = (rect.left() + 14.0, rect.right() - 14.0);
         let actual = row.actual.map(|a| a.value);
         let words = match row.actual {
-            Some(actual) => format!("{}: {}", row.name, with_error(actual.value, actual.error)),
-            None => format!("{}: not defined", row.name),
+            Some(actual) => {
+                format!(
+                    "{}: {}, nominal {}",
+                    row.name,
+                    with_error(actual.value, actual.error),
+                    shown(row.nominal, 4)
+                )
+            }
+            None => format!("{}: not defined, nominal {}", row.name, shown(row.nominal, 4)),
         };
-        painter.text(pos2(rect.left(), top), Align2::LEFT_TOP, words, tokens::bold(12.0), palette.ink);
-        let nominal = format!("nominal {}", shown(row.nominal, 5));
-        let y = top + height * 0.62;
+        painter.text(pos2(rect.left(), top), Align2::LEFT_TOP, words, tokens::bold(11.5), palette.ink);
+        let y = top + 14.0 + (height - 14.0) * 0.5;
         let distance = actual.map_or(0.0, |actual| (actual - row.nominal).abs());
         let error = row.actual.map_or(0.0, |a| a.error);
-        let reach = (distance + error).max(row.allowed.unwrap_or(0.0)).max(row.nominal.abs() * 1e-6).max(1e-12) * 1.35;
+        let reach =
+            (distance + error).max(row.allowed.unwrap_or(0.0)).max(row.nominal.abs() * 1e-6).max(1e-12)
+                * 1.35;
         let place = |value: f64| {
             let share = ((value - row.nominal) / reach).clamp(-1.0, 1.0) as f32;
             (left + right) / 2.0 + share * (right - left) / 2.0
         };
         if let Some(allowed) = row.allowed {
             let band = Rect::from_min_max(
-                pos2(place(row.nominal - allowed), y - 9.0),
-                pos2(place(row.nominal + allowed), y + 9.0),
+                pos2(place(row.nominal - allowed), y - 7.0),
+                pos2(place(row.nominal + allowed), y + 7.0),
             );
             painter.rect_filled(band, 2.0, palette.tolerance);
             for x in [band.left(), band.right()] {
@@ -90,7 +103,6 @@ pub fn draw(ui: &mut Ui, rect: Rect, view: &View<'_>) -> Asked {
         painter.hline(left..=right, y, Stroke::new(1.0, palette.muted));
         let x = place(row.nominal);
         paint_marker(&painter, pos2(x, y), Marker::Diamond, palette.normal, palette.card);
-        painter.text(pos2(x, y + 10.0), Align2::CENTER_TOP, nominal, tokens::regular(tokens::SMALL), palette.normal);
         if let Some(actual) = row.actual {
             let (from, to) = (place(actual.value - actual.error), place(actual.value + actual.error));
             painter.hline(from..=to, y, Stroke::new(3.0, palette.accent.gamma_multiply(0.5)));
@@ -124,8 +136,16 @@ pub fn table(view: &View<'_>) -> Table {
         ]);
     }
     for guarantee in view.shown.report.claim.guarantees.iter().flatten() {
-        let value = guarantee.value.map_or_else(|| "not available".to_owned(), |value| format!("≤ {}", shown(value, 5)));
-        table.rows.push(vec![guarantee.name.clone(), String::new(), value, String::new(), guarantee.conditions.clone()]);
+        let value = guarantee
+            .value
+            .map_or_else(|| "not available".to_owned(), |value| format!("≤ {}", shown(value, 5)));
+        table.rows.push(vec![
+            guarantee.name.clone(),
+            String::new(),
+            value,
+            String::new(),
+            guarantee.conditions.clone(),
+        ]);
     }
     table
 }

@@ -51,7 +51,7 @@ pub fn ghosts(plot: &Plot, ui: &Ui, view: &View<'_>, line: impl Fn(&Prepared) ->
 /// The shared cursor: drawn, and moved by the pointer.
 pub fn cursor(plot: &Plot, ui: &mut Ui, view: &View<'_>, name: &str) -> Asked {
     let palette = tokens::palette(ui);
-    let id = ui.id().with((name, "pointer"));
+    let id = ui.scope_id().with((name, "pointer"));
     let response = ui.interact(plot.area, id, Sense::hover());
     if let Some(z) = view.cursor {
         plot.upright(z, Ink { color: palette.muted, width: 1.0, dash: &[] });
@@ -116,7 +116,11 @@ pub fn readout(view: &View<'_>) -> String {
     match (facts.kolmogorov, facts.at_z) {
         (Some(distance), Some(z)) => {
             let side = if facts.side == Some(Side::JustBelow) { "just below " } else { "" };
-            format!("Kolmogorov distance {} {side}{}", with_error(distance.value, distance.error), at_words(view, z))
+            format!(
+                "Kolmogorov distance {} {side}{}",
+                with_error(distance.value, distance.error),
+                at_words(view, z)
+            )
         }
         _ => "no normal limit: there is nothing to compare".to_owned(),
     }

@@ -12,7 +12,9 @@ use gaussgap_conclusions::scenario::Claim;
 
 /// The tolerance where it is about the whole curve.
 fn band(view: &View<'_>) -> Option<f64> {
-    matches!(view.scenario.claim, Claim::Curve).then_some(view.shown.report.claim.allowed).filter(|a| a.is_finite())
+    matches!(view.scenario.claim, Claim::Curve)
+        .then_some(view.shown.report.claim.allowed)
+        .filter(|a| a.is_finite())
 }
 
 /// Draws the figure.
@@ -35,7 +37,9 @@ pub fn draw(ui: &mut Ui, rect: Rect, view: &View<'_>) -> Asked {
     plot.line(&view.shown.expansion, Ink::new(palette.expansion, dash::EXPANSION));
     plot.line(&view.shown.gap, Ink::new(palette.accent, dash::ACTUAL));
     let facts = &view.shown.report.distance;
-    if let Some((z, (actual, normal))) = facts.at_z.and_then(|z| Some((z, fit::at(view.shown, z, facts.side)?))) {
+    if let Some((z, (actual, normal))) =
+        facts.at_z.and_then(|z| Some((z, fit::at(view.shown, z, facts.side)?)))
+    {
         plot.marker(z, actual - normal, Marker::Disc, palette.fails);
     }
     fit::cursor(&plot, ui, view, "gap")
@@ -54,7 +58,11 @@ pub fn readout(view: &View<'_>) -> String {
     }
     let ends = extent([view.shown.gap.as_slice()], 1);
     ends.map_or_else(String::new, |(low, high)| {
-        format!("from {} to {}: negative where large values are likelier than normal", shown(low, 3), shown(high, 3))
+        format!(
+            "from {} to {}: negative where large values are likelier than normal",
+            shown(low, 3),
+            shown(high, 3)
+        )
     })
 }
 
@@ -63,7 +71,12 @@ pub fn table(view: &View<'_>) -> Table {
     let mut table = Table::new(&["place", "gap below", "gap at", "one-term expansion"]);
     for z in places(view) {
         if let Some((at, below, normal)) = both_sides(view.shown, z) {
-            let term = view.shown.report.sum.skewness.map(|skewness| super::super::model::prepared::first_term(z, skewness));
+            let term = view
+                .shown
+                .report
+                .sum
+                .skewness
+                .map(|skewness| super::super::model::prepared::first_term(z, skewness));
             let term = term.map_or_else(|| "not defined".to_owned(), |term| shown(term, 4));
             table.rows.push(vec![view.place(z), shown(below - normal, 4), shown(at - normal, 4), term]);
         }

@@ -66,15 +66,22 @@ fn handle(ui: &mut Ui, plot: &Plot, view: &View<'_>, n: f64) -> Asked {
         return Asked::default();
     }
     let grip = Rect::from_center_size(pos2(x, plot.area.top() + 5.0), vec2(20.0, 18.0));
-    let whole = grip.union(Rect::from_center_size(pos2(x, plot.area.center().y), vec2(9.0, plot.area.height())));
-    let id = ui.id().with("planned n");
-    let response = ui.interact(whole, id, Sense::click_and_drag()).on_hover_cursor(CursorIcon::ResizeHorizontal);
+    let whole =
+        grip.union(Rect::from_center_size(pos2(x, plot.area.center().y), vec2(9.0, plot.area.height())));
+    let id = ui.scope_id().with("planned n");
+    let response =
+        ui.interact(whole, id, Sense::click_and_drag()).on_hover_cursor(CursorIcon::ResizeHorizontal);
     response.widget_info(|| WidgetInfo::slider(true, n, "Planned n (handle in Growth)"));
     let held = response.hovered() || response.dragged() || response.has_focus();
     let color = if held { palette.accent } else { palette.ink };
     paint_marker(ui.painter(), pos2(x, plot.area.top() + 4.0), Marker::Triangle, color, palette.card);
     if response.has_focus() {
-        ui.painter().rect_stroke(grip, 2.0, egui::Stroke::new(2.0, palette.accent), egui::StrokeKind::Outside);
+        ui.painter().rect_stroke(
+            grip,
+            2.0,
+            egui::Stroke::new(2.0, palette.accent),
+            egui::StrokeKind::Outside,
+        );
         let filter = EventFilter { horizontal_arrows: true, ..EventFilter::default() };
         ui.memory_mut(|memory| memory.set_focus_lock_filter(id, filter));
     }
@@ -84,7 +91,11 @@ fn handle(ui: &mut Ui, plot: &Plot, view: &View<'_>, n: f64) -> Asked {
     }
     if response.has_focus() {
         let (left, right, far) = ui.input(|i| {
-            (i.num_presses(Key::ArrowLeft), i.num_presses(Key::ArrowRight), i.modifiers.shift || i.modifiers.ctrl)
+            (
+                i.num_presses(Key::ArrowLeft),
+                i.num_presses(Key::ArrowRight),
+                i.modifiers.shift || i.modifiers.ctrl,
+            )
         });
         let step = if far { (n * 0.1).max(1.0).round() } else { 1.0 };
         if left + right > 0 {

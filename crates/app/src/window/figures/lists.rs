@@ -11,7 +11,7 @@ fn list(columns: &[&str], empty: &str) -> Table {
 }
 
 fn verdict(holds: bool) -> &'static str {
-    if holds { "✓ holds" } else { "✗ fails" }
+    if holds { "✓\u{a0}holds" } else { "✗\u{a0}fails" }
 }
 
 /// What else could be done at the planned n, each with its actual figure.
@@ -21,7 +21,12 @@ pub fn remedies(view: &View<'_>) -> Table {
     let mut table = list(&["remedy", "holds", "actual", "note"], empty);
     for remedy in current.iter().flat_map(|full| &full.report.remedies) {
         let actual = remedy.actual.map_or_else(String::new, |a| with_error(a.value, a.error));
-        table.rows.push(vec![remedy.name.clone(), verdict(remedy.holds).to_owned(), actual, remedy.note.clone()]);
+        table.rows.push(vec![
+            remedy.name.clone(),
+            verdict(remedy.holds).to_owned(),
+            actual,
+            remedy.note.clone(),
+        ]);
     }
     table
 }
@@ -33,8 +38,8 @@ pub fn rules(view: &View<'_>) -> Table {
     let mut table = list(&["rule", "says", "agrees", "asks for", "source"], empty);
     for rule in current.iter().flat_map(|full| &full.report.rules_of_thumb) {
         let agrees = match rule.agrees {
-            Some(true) => "✓ agrees",
-            Some(false) => "✗ disagrees",
+            Some(true) => "✓\u{a0}agrees",
+            Some(false) => "✗\u{a0}disagrees",
             None => "undecided",
         };
         let asks = rule.n.map_or_else(String::new, |n| format!("n ≥ {}", thousands(n as f64)));
@@ -54,7 +59,8 @@ pub fn cautions(view: &View<'_>) -> Table {
     let mut table = list(&["caution"], "None.");
     let report = &view.shown.report;
     let summands = report.summands.iter().chain([&report.summand]);
-    let mut lines: Vec<&String> = summands.flat_map(|summand| &summand.warnings).chain(&report.cautions).collect();
+    let mut lines: Vec<&String> =
+        summands.flat_map(|summand| &summand.warnings).chain(&report.cautions).collect();
     let mut seen = std::collections::HashSet::new();
     lines.retain(|line| seen.insert(line.as_str()));
     table.rows = lines.into_iter().map(|line| vec![line.clone()]).collect();

@@ -89,9 +89,12 @@ impl Plot {
             .map(|tick| (tick.at, text(&tick.label, palette.muted)))
             .collect();
         let label_width = y_ticks.iter().map(|(_, label)| label.size().x).fold(0.0, f32::max);
+        // A short name of the axis stands beside the last tick, a long one takes its place.
+        let name_width = text(&x.label, palette.muted).size().x;
+        let name_room = if name_width < 34.0 { name_width + 8.0 } else { 10.0 };
         let area = Rect::from_min_max(
-            pos2(outer.left() + label_width + 8.0, outer.top() + line_height + 2.0),
-            pos2(outer.right() - 10.0, outer.bottom() - line_height - 6.0),
+            pos2(outer.left() + label_width + 8.0, outer.top() + line_height + 9.0),
+            pos2(outer.right() - name_room, outer.bottom() - line_height - 6.0),
         );
         let plot = Self { painter: painter.clone(), area, x, y, palette };
         if area.width() < 20.0 || area.height() < 20.0 {
@@ -103,17 +106,18 @@ impl Plot {
             let place = pos2(area.left() - 5.0 - label.size().x, y - label.size().y / 2.0);
             painter.galley(place, label, palette.muted);
         }
-        plot.x_ticks(line_height);
+        plot.x_ticks();
         painter.hline(area.x_range(), area.bottom(), Stroke::new(1.0, palette.muted));
         painter.text(pos2(outer.left(), outer.top()), Align2::LEFT_TOP, &plot.y.label, font, palette.muted);
         plot
     }
 
-    fn x_ticks(&self, line_height: f32) {
+    fn x_ticks(&self) {
         let font = tokens::regular(tokens::SMALL);
         let Self { painter, area, palette, .. } = self;
         let name = painter.layout_no_wrap(self.x.label.clone(), font.clone(), palette.muted);
-        let name_from = area.right() + 8.0 - name.size().x;
+        let short = name.size().x < 34.0;
+        let name_from = if short { area.right() + 8.0 } else { area.right() + 8.0 - name.size().x };
         let most = (area.width() / 48.0).clamp(2.0, 12.0) as usize;
         let mut free_from = area.left() - 30.0;
         for tick in ticks::ticks(self.x.scale, self.x.from, self.x.to, most) {
@@ -121,12 +125,11 @@ impl Plot {
             painter.vline(x, area.bottom()..=area.bottom() + 3.0, Stroke::new(1.0, palette.muted));
             let label = painter.layout_no_wrap(tick.label, font.clone(), palette.muted);
             let left = x - label.size().x / 2.0;
-            if left > free_from + 6.0 && left + label.size().x < name_from - 6.0 {
+            if left > free_from + 6.0 && left + label.size().x < name_from - 2.0 {
                 free_from = left + label.size().x;
                 painter.galley(pos2(left, area.bottom() + 4.0), label, palette.muted);
             }
         }
-        let _ = line_height;
         painter.galley(pos2(name_from, area.bottom() + 4.0), name, palette.muted);
     }
 
@@ -208,7 +211,13 @@ impl Plot {
     /// A marker.
     pub fn marker(&self, x: f64, y: f64, marker: Marker, color: Color32) {
         if x.is_finite() && y.is_finite() {
-            paint_marker(&self.inside(), pos2(self.x_to_screen(x), self.y_to_screen(y)), marker, color, self.palette.card);
+            paint_marker(
+                &self.inside(),
+                pos2(self.x_to_screen(x), self.y_to_screen(y)),
+                marker,
+                color,
+                self.palette.card,
+            );
         }
     }
 

@@ -24,7 +24,11 @@ impl Table {
 
     /// Tab-separated text for the clipboard.
     pub fn to_text(&self) -> String {
-        std::iter::once(&self.columns).chain(&self.rows).map(|row| row.join("\t")).collect::<Vec<_>>().join("\n")
+        std::iter::once(&self.columns)
+            .chain(&self.rows)
+            .map(|row| row.join("\t"))
+            .collect::<Vec<_>>()
+            .join("\n")
     }
 }
 
@@ -41,9 +45,11 @@ pub fn show(ui: &mut Ui, id: egui::Id, table: &Table) {
         if table.wraps {
             return stacked(ui, table);
         }
-        egui::Grid::new(id.with("grid")).num_columns(table.columns.len()).spacing([14.0, 3.0]).striped(true).show(
-            ui,
-            |ui| {
+        egui::Grid::new(id.with("grid"))
+            .num_columns(table.columns.len())
+            .spacing([14.0, 3.0])
+            .striped(true)
+            .show(ui, |ui| {
                 for column in &table.columns {
                     ui.label(heading(column));
                 }
@@ -54,8 +60,7 @@ pub fn show(ui: &mut Ui, id: egui::Id, table: &Table) {
                     }
                     ui.end_row();
                 }
-            },
-        );
+            });
     });
 }
 
@@ -84,7 +89,11 @@ fn stacked(ui: &mut Ui, table: &Table) {
                 });
             }
             if !text.is_empty() {
-                ui.label(RichText::new(text).size(12.0).color(if short.is_empty() { palette.ink } else { palette.muted }));
+                ui.label(RichText::new(text).size(12.0).color(if short.is_empty() {
+                    palette.ink
+                } else {
+                    palette.muted
+                }));
             }
         }
     }

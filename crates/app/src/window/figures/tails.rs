@@ -29,9 +29,7 @@ pub fn draw(ui: &mut Ui, rect: Rect, view: &View<'_>) -> Asked {
             (value > 0.0).then(|| [row.z, value.log10()])
         })
         .collect();
-    let inside = |points: &[[f64; 2]]| -> Option<f64> {
-        extent([points], 1).map(|(low, _)| low)
-    };
+    let inside = |points: &[[f64; 2]]| -> Option<f64> { extent([points], 1).map(|(low, _)| low) };
     let lowest = [&shown.normal_low, &shown.normal_high]
         .into_iter()
         .filter_map(|line| line.iter().filter(|p| p[0].abs() <= fit::REACH).map(|p| p[1]).reduce(f64::min))
@@ -39,9 +37,8 @@ pub fn draw(ui: &mut Ui, rect: Rect, view: &View<'_>) -> Asked {
         .fold(-4.0, f64::min);
     let floor = lowest.max(-12.0) - 0.3;
     let plot = Plot::new(ui, rect, z_axis(view), Axis::new(floor, 0.0, Scale::Log, "tail probability"));
-    for line in [|p: &crate::window::model::prepared::Prepared| &p.tail_low[..], |p| &p.tail_high[..]] {
-        fit::ghosts(&plot, ui, view, line);
-    }
+    fit::ghosts(&plot, ui, view, |pin| &pin.tail_low);
+    fit::ghosts(&plot, ui, view, |pin| &pin.tail_high);
     for line in [&shown.normal_low, &shown.normal_high] {
         plot.line(line, Ink::new(palette.normal, dash::NORMAL));
     }
@@ -56,7 +53,9 @@ pub fn draw(ui: &mut Ui, rect: Rect, view: &View<'_>) -> Asked {
 
 /// The line under the figure.
 pub fn readout(view: &View<'_>) -> String {
-    if let Some((z, (at, below, normal))) = view.cursor.and_then(|z| Some((z, fit::both_sides(view.shown, z)?))) {
+    if let Some((z, (at, below, normal))) =
+        view.cursor.and_then(|z| Some((z, fit::both_sides(view.shown, z)?)))
+    {
         let (actual, normal) = if z <= 0.0 { (at, normal) } else { (1.0 - below, 1.0 - normal) };
         if actual > 1e-10 && normal > 1e-10 {
             return format!(

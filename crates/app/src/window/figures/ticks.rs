@@ -1,7 +1,7 @@
 //! Where the ticks of an axis lie and what they say.
 
-use super::super::numbers::{shown, superscript};
 use super::super::model::prepared::OwnUnits;
+use super::super::numbers::{shown, superscript};
 
 /// What the numbers along an axis mean.
 #[derive(Debug, Clone, Copy, PartialEq)]

@@ -98,7 +98,8 @@ fn quantity(scenario: &mut Scenario, change: impl FnOnce(&mut Quantity)) {
 
 fn set_n(source: &mut Source, slot: usize, n: u64) {
     match source {
-        Source::Like { n: planned, .. } => *planned = n,
+        Source::Like { n: planned, .. } if slot == 0 => *planned = n,
+        Source::Like { .. } => {}
         Source::Parts { parts } => {
             if let Some(part) = parts.get_mut(slot) {
                 part.count = n;

@@ -1,7 +1,8 @@
 //! The bundled scenarios of the Quillmere Ferry Line, and the blank one.
 
 use gaussgap_conclusions::scenario::{
-    Claim, MethodSpec, Quantity, SCENARIO_FORMAT, Scenario, Search, Sides, Source, Spread, Statistic, Tolerance,
+    Claim, MethodSpec, Quantity, SCENARIO_FORMAT, Scenario, Search, Sides, Source, Spread, Statistic,
+    Tolerance,
 };
 use gaussgap_simulation::law::LawSpec;
 use gaussgap_simulation::sum::RouteChoice;
@@ -51,7 +52,12 @@ pub fn blank() -> Scenario {
         statistic: Statistic::Mean,
         claim: Claim::Interval { level: 0.95, sides: Sides::Two, spread: Spread::Known },
         tolerance: Tolerance::Absolute(0.01),
-        method: MethodSpec { route: RouteChoice::Auto, draws: 4_000_000, seed: 20_260_101, confidence: 0.999 },
+        method: MethodSpec {
+            route: RouteChoice::Auto,
+            draws: 4_000_000,
+            seed: 20_260_101,
+            confidence: 0.999,
+        },
         probe_z: vec![-4.0, -3.0, -2.0, -1.0, 0.0, 1.0, 2.0, 3.0, 4.0],
         search: Search { up_to: 10_000 },
     }

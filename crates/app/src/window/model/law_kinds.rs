@@ -133,11 +133,17 @@ pub fn base(kind: &str, near: Near) -> LawSpec {
         "exponential" => LawSpec::Exponential { mean: r(positive) },
         "gamma" => LawSpec::Gamma { shape: r(ratio * ratio), scale: r(positive / (ratio * ratio)) },
         "weibull" => LawSpec::Weibull { shape: 1.5, scale: r(positive / 0.902_745_292_950_933_6) },
-        "lognormal" => LawSpec::Lognormal { log_mean: None, log_sd: None, mean: Some(r(positive)), sd: Some(r(sd)) },
-        "inverse-gaussian" => LawSpec::InverseGaussian { mean: r(positive), shape: r(positive * ratio * ratio) },
+        "lognormal" => {
+            LawSpec::Lognormal { log_mean: None, log_sd: None, mean: Some(r(positive)), sd: Some(r(sd)) }
+        }
+        "inverse-gaussian" => {
+            LawSpec::InverseGaussian { mean: r(positive), shape: r(positive * ratio * ratio) }
+        }
         "lomax" => LawSpec::Lomax { shape: 4.5, scale: r(3.5 * positive) },
         "pareto" => LawSpec::Pareto { shape: 4.5, minimum: r(positive * 3.5 / 4.5) },
-        "generalized-pareto" => LawSpec::GeneralizedPareto { threshold: 0.0, scale: r(0.8 * positive), shape: 0.2 },
+        "generalized-pareto" => {
+            LawSpec::GeneralizedPareto { threshold: 0.0, scale: r(0.8 * positive), shape: 0.2 }
+        }
         "beta" => LawSpec::Beta { a: 2.0, b: 5.0, low: None, high: None },
         "triangular" => {
             let half = 6f64.sqrt() * sd;
@@ -145,7 +151,9 @@ pub fn base(kind: &str, near: Near) -> LawSpec {
         }
         "laplace" => LawSpec::Laplace { mean: r(mean), scale: r(sd / 2f64.sqrt()) },
         "logistic" => LawSpec::Logistic { mean: r(mean), scale: r(sd * 3f64.sqrt() / std::f64::consts::PI) },
-        "student-t" => LawSpec::StudentT { df: 5.0, location: Some(r(mean)), scale: Some(r(sd * 0.6f64.sqrt())) },
+        "student-t" => {
+            LawSpec::StudentT { df: 5.0, location: Some(r(mean)), scale: Some(r(sd * 0.6f64.sqrt())) }
+        }
         "formula" => LawSpec::Formula { density: "x*exp(-x)".to_owned(), low: 0.0, high: 20.0 },
         "mixture" => LawSpec::Mixture {
             parts: vec![
@@ -195,7 +203,8 @@ mod tests {
             let mut law = base(name, Near { mean: 48.0, sd: 31.0 });
             assert_eq!(kind(&law), name);
             assert_eq!(title(&law), words);
-            let names: Vec<&str> = law_parameters::parameters(&mut law).iter().map(|(name, _)| *name).collect();
+            let names: Vec<&str> =
+                law_parameters::parameters(&mut law).iter().map(|(name, _)| *name).collect();
             for parameter in names {
                 let changed = law_parameters::with_parameter(&law, parameter, &Value::Real(0.25));
                 let again = law_parameters::with_parameter(&changed, parameter, &Value::Real(0.25));

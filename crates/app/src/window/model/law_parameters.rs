@@ -67,18 +67,24 @@ pub fn parameters(law: &mut LawSpec) -> Vec<(&'static str, Parameter<'_>)> {
         LawSpec::Poisson { rate } => vec![("rate", Shape(rate))],
         LawSpec::NegativeBinomial { size, p } => vec![("size", Shape(size)), ("p", Share(p))],
         LawSpec::DiscreteUniform { low, high } => vec![("low", Whole(low)), ("high", Whole(high))],
-        LawSpec::Table { values, weights } => vec![("values", Numbers(values)), ("weights", Numbers(weights))],
+        LawSpec::Table { values, weights } => {
+            vec![("values", Numbers(values)), ("weights", Numbers(weights))]
+        }
         LawSpec::Data { tail, .. } => match tail {
             Some(DataTail::GeneralizedPareto { above_quantile }) => {
                 vec![("tail/above_quantile", Share(above_quantile))]
             }
             None => Vec::new(),
         },
-        LawSpec::Histogram { edges, weights } => vec![("edges", Numbers(edges)), ("weights", Numbers(weights))],
+        LawSpec::Histogram { edges, weights } => {
+            vec![("edges", Numbers(edges)), ("weights", Numbers(weights))]
+        }
         LawSpec::Normal { mean, sd } => vec![("mean", Amount(mean)), ("sd", Amount(sd))],
         LawSpec::Uniform { low, high } => vec![("low", Amount(low)), ("high", Amount(high))],
         LawSpec::Exponential { mean } => vec![("mean", Amount(mean))],
-        LawSpec::Gamma { shape, scale } | LawSpec::Weibull { shape, scale } | LawSpec::Lomax { shape, scale } => {
+        LawSpec::Gamma { shape, scale }
+        | LawSpec::Weibull { shape, scale }
+        | LawSpec::Lomax { shape, scale } => {
             vec![("shape", Shape(shape)), ("scale", Amount(scale))]
         }
         LawSpec::Lognormal { log_mean: Some(log_mean), log_sd: Some(log_sd), .. } => {
@@ -125,7 +131,9 @@ impl Parameter<'_> {
             Self::Shape(value) => (Value::Real(**value), Style::Shape),
             Self::Share(value) => (Value::Real(**value), Style::Share),
             Self::Limit(value) => (Value::Limit(**value), Style::Limit),
-            Self::Count(value) => (Value::Whole(i64::try_from(**value).unwrap_or(i64::MAX)), Style::Whole(1, 1_000_000_000)),
+            Self::Count(value) => {
+                (Value::Whole(i64::try_from(**value).unwrap_or(i64::MAX)), Style::Whole(1, 1_000_000_000))
+            }
             Self::Whole(value) => (Value::Whole(**value), Style::Whole(-1_000_000_000, 1_000_000_000)),
             Self::Numbers(values) => (Value::Numbers((*values).clone()), Style::Numbers),
             Self::Text(text) => (Value::Text((*text).clone()), Style::Text),

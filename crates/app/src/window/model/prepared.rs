@@ -81,7 +81,7 @@ impl Prepared {
             growth_leading: log_line(&report.growth.n, &report.growth.leading_term),
             own_units: own_units(&report, scenario),
             pictures: pictures(scenario),
-            report: std::sync::Arc::new(Report { ..report.clone() }),
+            report: std::sync::Arc::new(report.clone()),
         };
         let skewness = report.sum.skewness;
         let rows = curve.z.iter().zip(&curve.at_or_below).zip(&curve.below).zip(&curve.normal);

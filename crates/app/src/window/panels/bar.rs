@@ -29,11 +29,14 @@ pub fn show(ui: &mut Ui, fields: &mut Fields, document: &Document, bar: Bar, ask
         ui.add_space(6.0);
         if !bar.start_page {
             let title = document.scenario().title.clone().unwrap_or_default();
-            let spec = Field { hint: "untitled plan", ..Field::card(Id::new("title"), "Title", 250.0) };
+            let spec = Field { hint: "untitled plan", ..Field::card(Id::unique("title"), "Title", 250.0) };
             if let Some(title) = fields::text(ui, fields, &spec, &title) {
                 asks.edit(Edit::Title(title));
             }
-            let file = document.path().and_then(|path| path.file_name()).map(|name| name.to_string_lossy().into_owned());
+            let file = document
+                .path()
+                .and_then(|path| path.file_name())
+                .map(|name| name.to_string_lossy().into_owned());
             let (state, tip) = match (file, document.is_changed()) {
                 (Some(file), true) => ("● changed", format!("{file} has unsaved changes")),
                 (Some(file), false) => ("saved", file),
@@ -78,8 +81,18 @@ fn mark(ui: &mut Ui) {
     let palette = tokens::palette(ui);
     let (rect, _) = ui.allocate_exact_size(egui::vec2(20.0, 20.0), egui::Sense::hover());
     let at = |x: f32, y: f32| rect.left_top() + egui::vec2(x, y);
-    let steps = vec![at(1.0, 18.0), at(6.0, 18.0), at(6.0, 13.0), at(11.0, 13.0), at(11.0, 5.0), at(16.0, 5.0), at(16.0, 2.0), at(20.0, 2.0)];
-    let smooth = vec![at(0.0, 17.0), at(4.0, 15.5), at(8.0, 12.0), at(11.0, 8.5), at(15.0, 4.5), at(20.0, 2.8)];
+    let steps = vec![
+        at(1.0, 18.0),
+        at(6.0, 18.0),
+        at(6.0, 13.0),
+        at(11.0, 13.0),
+        at(11.0, 5.0),
+        at(16.0, 5.0),
+        at(16.0, 2.0),
+        at(20.0, 2.0),
+    ];
+    let smooth =
+        vec![at(0.0, 17.0), at(4.0, 15.5), at(8.0, 12.0), at(11.0, 8.5), at(15.0, 4.5), at(20.0, 2.8)];
     ui.painter().line(smooth, egui::Stroke::new(1.5, palette.normal));
     ui.painter().line(steps, egui::Stroke::new(2.0, palette.accent));
 }

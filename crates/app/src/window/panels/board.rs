@@ -4,7 +4,9 @@ use super::{Ask, Asks};
 use crate::window::command::Command;
 use crate::window::figures::{self, Figure, View, table};
 use crate::window::tokens::{self, dash};
-use egui::{Frame, Id, Margin, Rect, RichText, ScrollArea, Sense, Stroke, Ui, UiBuilder, Vec2, WidgetInfo, pos2, vec2};
+use egui::{
+    Frame, Id, Margin, Rect, RichText, ScrollArea, Sense, Stroke, Ui, UiBuilder, Vec2, WidgetInfo, pos2, vec2,
+};
 use std::collections::HashSet;
 
 /// What the board remembers.
@@ -42,11 +44,13 @@ pub fn show(ui: &mut Ui, board: &mut Board, view: &View<'_>, asks: &mut Asks) {
     }
     let shown: Vec<Figure> = figures::ALL.into_iter().filter(|figure| figure.applies(view)).collect();
     let bar = 14.0;
-    let columns = (((space.x - bar) / tokens::FIGURE_WIDTH).floor() as usize).clamp(1, 3).min(shown.len().max(1));
+    let columns =
+        (((space.x - bar) / tokens::FIGURE_WIDTH).floor() as usize).clamp(1, 3).min(shown.len().max(1));
     let rows = shown.len().div_ceil(columns);
     let visible_rows = ((space.y / tokens::FIGURE_HEIGHT).floor() as usize).clamp(1, rows.max(1));
     let gap = tokens::GAP;
-    let height = ((space.y - gap * (visible_rows - 1) as f32) / visible_rows as f32).max(tokens::FIGURE_HEIGHT - 12.0);
+    let height =
+        ((space.y - gap * (visible_rows - 1) as f32) / visible_rows as f32).max(tokens::FIGURE_HEIGHT - 12.0);
     let scrolls = rows > visible_rows;
     let width = (space.x - if scrolls { bar } else { 0.0 } - gap * (columns - 1) as f32) / columns as f32;
     ScrollArea::vertical().id_salt("board").auto_shrink(false).show(ui, |ui| {
@@ -109,10 +113,14 @@ fn tile(ui: &mut Ui, size: Vec2, figure: Figure, board: &mut Board, view: &View<
     if !ui.is_rect_visible(outer) {
         return;
     }
-    let frame = Frame::new().fill(palette.card).stroke(Stroke::new(1.0, palette.line)).corner_radius(tokens::CORNER);
+    let frame =
+        Frame::new().fill(palette.card).stroke(Stroke::new(1.0, palette.line)).corner_radius(tokens::CORNER);
     ui.painter().add(frame.paint(outer.shrink(1.0)));
     let inner = outer.shrink2(vec2(10.0, 7.0));
-    let builder = UiBuilder::new().id_salt(("tile", figure)).max_rect(inner);
+    let builder = UiBuilder::new()
+        .layout(egui::Layout::top_down(egui::Align::Min))
+        .id_salt(("tile", figure))
+        .max_rect(inner);
     let mut child = ui.new_child(builder);
     let ui = &mut child;
     ui.set_clip_rect(outer.intersect(ui.clip_rect()));
@@ -127,11 +135,13 @@ fn tile(ui: &mut Ui, size: Vec2, figure: Figure, board: &mut Board, view: &View<
     if body.height() < 20.0 {
         return;
     }
-    let mut content = ui.new_child(UiBuilder::new().id_salt("body").max_rect(body));
+    let mut content = ui.new_child(
+        UiBuilder::new().layout(egui::Layout::top_down(egui::Align::Min)).id_salt("body").max_rect(body),
+    );
     if as_table {
-        table::show(&mut content, Id::new(("table", figure)), &figure.table(view));
+        table::show(&mut content, Id::unique(("table", figure)), &figure.table(view));
     } else {
-        let id = content.id().with("figure");
+        let id = content.scope_id().with("figure");
         let response = content.interact(body, id, Sense::hover());
         let name = format!("{}: {}", figure.title(), figure.readout(&View { cursor: None, ..*view }));
         response.widget_info(|| WidgetInfo::labeled(egui::accesskit::Role::Image, true, &name));
@@ -146,7 +156,12 @@ fn tile(ui: &mut Ui, size: Vec2, figure: Figure, board: &mut Board, view: &View<
     if figure.is_drawing() {
         let words = RichText::new(figure.readout(view)).size(tokens::SMALL).color(palette.muted);
         let rect = Rect::from_min_max(pos2(inner.left(), inner.bottom() - 15.0), inner.max);
-        let mut footer = ui.new_child(UiBuilder::new().id_salt("footer").max_rect(rect));
+        let mut footer = ui.new_child(
+            UiBuilder::new()
+                .layout(egui::Layout::top_down(egui::Align::Min))
+                .id_salt("footer")
+                .max_rect(rect),
+        );
         footer.add(egui::Label::new(words).truncate());
     }
 }
@@ -172,7 +187,10 @@ fn heading(ui: &mut Ui, figure: Figure, as_table: bool, board: &mut Board, view:
                     }
                 }
             }
-            if as_table && enlarged && button(ui, "Copy", &format!("Copy the table of {}", figure.title()), "") {
+            if as_table
+                && enlarged
+                && button(ui, "Copy", &format!("Copy the table of {}", figure.title()), "")
+            {
                 asks.list.push(Ask::Copy(figure.table(view).to_text()));
             }
             ui.with_layout(egui::Layout::left_to_right(egui::Align::Center), |ui| {
@@ -195,7 +213,8 @@ fn button(ui: &mut Ui, text: &str, name: &str, tip: &str) -> bool {
 /// A frame around the board where there is nothing to show yet.
 pub fn empty(ui: &mut Ui, words: &str) {
     let palette = tokens::palette(ui);
-    let frame = Frame::new().fill(palette.card).stroke(Stroke::new(1.0, palette.line)).inner_margin(Margin::same(24));
+    let frame =
+        Frame::new().fill(palette.card).stroke(Stroke::new(1.0, palette.line)).inner_margin(Margin::same(24));
     frame.corner_radius(tokens::CORNER).show(ui, |ui| {
         ui.set_min_size(ui.available_size());
         ui.label(RichText::new(words).color(palette.muted));

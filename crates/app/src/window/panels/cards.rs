@@ -73,7 +73,8 @@ impl Cards<'_> {
             Source::Groups { .. } => 2,
         };
         let mut chosen = now;
-        let combo = ComboBox::from_id_salt("summands").selected_text(options[now]).width(ui.available_width() - 8.0);
+        let combo =
+            ComboBox::from_id_salt("summands").selected_text(options[now]).width(ui.available_width() - 8.0);
         ui.name_inputs("Summands", |ui| {
             combo.show_ui(ui, |ui| {
                 for (index, words) in options.iter().enumerate() {
@@ -92,7 +93,7 @@ impl Cards<'_> {
             let counted = if word == "Part" { "copies" } else { "n" };
             ui.label(counted);
             let label = format!("{word} {}: {counted}", slot + 1);
-            let spec = Field::card(Id::new(("count", slot)), &label, 80.0);
+            let spec = Field::card(Id::unique(("count", slot)), &label, 80.0);
             let n = i64::try_from(n).unwrap_or(i64::MAX);
             let typed = fields::whole(ui, self.fields, &spec, n, (1, LARGEST_N as i64));
             if let Some(n) = typed.and_then(|n| u64::try_from(n).ok()) {
@@ -180,7 +181,10 @@ impl Cards<'_> {
         let now = law_kinds::kind(law);
         let mut chosen = now;
         let title = RichText::new(law_kinds::title(law)).font(tokens::bold(tokens::BODY));
-        let combo = ComboBox::from_id_salt("kind").selected_text(title).width(ui.available_width() - 12.0).height(420.0);
+        let combo = ComboBox::from_id_salt("kind")
+            .selected_text(title)
+            .width(ui.available_width() - 12.0)
+            .height(420.0);
         ui.name_inputs("Base law", |ui| {
             combo.show_ui(ui, |ui| {
                 for (kind, words) in law_kinds::BASES {
@@ -224,7 +228,7 @@ impl Cards<'_> {
     }
 
     fn id(&self, place: &Place, name: &str) -> Id {
-        Id::new((place.slot, &place.path, name))
+        Id::unique((place.slot, &place.path, name))
     }
 
     fn parameters(&mut self, ui: &mut Ui, place: &Place, law: &LawSpec) {
@@ -312,16 +316,21 @@ impl Cards<'_> {
     }
 
     fn typed(&mut self, ui: &mut Ui, spec: &Field<'_>, value: &Value, style: Style) -> Option<Value> {
-        let list = |values: &Vec<f64>| values.iter().map(|v| numbers::plain(*v)).collect::<Vec<_>>().join(", ");
+        let list =
+            |values: &Vec<f64>| values.iter().map(|v| numbers::plain(*v)).collect::<Vec<_>>().join(", ");
         match (value, style) {
             (Value::Real(value), _) => fields::real(ui, self.fields, spec, *value).map(Value::Real),
-            (Value::Limit(value), _) => fields::optional_real(ui, self.fields, spec, *value).map(Value::Limit),
+            (Value::Limit(value), _) => {
+                fields::optional_real(ui, self.fields, spec, *value).map(Value::Limit)
+            }
             (Value::Whole(value), Style::Whole(low, high)) => {
                 fields::whole(ui, self.fields, spec, *value, (low, high)).map(Value::Whole)
             }
             (Value::Whole(_), _) => None,
             (Value::Numbers(values), _) => {
-                fields::field(ui, self.fields, spec, &list(values), numbers::read_list, list).1.map(Value::Numbers)
+                fields::field(ui, self.fields, spec, &list(values), numbers::read_list, list)
+                    .1
+                    .map(Value::Numbers)
             }
             (Value::Text(text), _) => fields::text(ui, self.fields, spec, text).map(Value::Text),
         }
@@ -338,7 +347,12 @@ impl Cards<'_> {
         let switched = match (log_mean, log_sd, mean, sd) {
             (Some(m), Some(s), _, _) => {
                 let mean = (m + s * s / 2.0).exp();
-                LawSpec::Lognormal { log_mean: None, log_sd: None, mean: Some(mean), sd: Some(mean * (s * s).exp_m1().sqrt()) }
+                LawSpec::Lognormal {
+                    log_mean: None,
+                    log_sd: None,
+                    mean: Some(mean),
+                    sd: Some(mean * (s * s).exp_m1().sqrt()),
+                }
             }
             (_, _, Some(mean), Some(sd)) if *mean > 0.0 => {
                 let variance = ((sd / mean) * (sd / mean)).ln_1p();
@@ -406,7 +420,9 @@ impl Cards<'_> {
                             parts[index].weight = weight;
                             self.asks.edit(Edit::Law(place.clone(), LawSpec::Mixture { parts }));
                         }
-                        if parts.len() > 1 && small(ui, "×", &format!("Remove part {} of the mixture", index + 1)) {
+                        if parts.len() > 1
+                            && small(ui, "×", &format!("Remove part {} of the mixture", index + 1))
+                        {
                             let mut parts = parts.clone();
                             parts.remove(index);
                             self.asks.edit(Edit::Law(place.clone(), LawSpec::Mixture { parts }));
@@ -452,7 +468,9 @@ impl Cards<'_> {
         ui.add_space(tokens::GAP);
         ui.label(RichText::new("Summands are").color(tokens::palette(ui).muted));
         let mut chosen = now;
-        let combo = ComboBox::from_id_salt("dependence").selected_text(options[now]).width(ui.available_width() - 8.0);
+        let combo = ComboBox::from_id_salt("dependence")
+            .selected_text(options[now])
+            .width(ui.available_width() - 8.0);
         ui.name_inputs("Dependence", |ui| {
             combo.show_ui(ui, |ui| {
                 for (index, words) in options.iter().enumerate() {
@@ -471,22 +489,24 @@ impl Cards<'_> {
         }
         match dependence {
             Some(Dependence::MovingAverage { weights }) => {
-                let list = |values: &Vec<f64>| values.iter().map(|v| numbers::plain(*v)).collect::<Vec<_>>().join(", ");
+                let list = |values: &Vec<f64>| {
+                    values.iter().map(|v| numbers::plain(*v)).collect::<Vec<_>>().join(", ")
+                };
                 let width = ui.available_width();
-                let spec = Field::card(Id::new("ma weights"), "Weights of the moving average", width);
+                let spec = Field::card(Id::unique("ma weights"), "Weights of the moving average", width);
                 let typed = fields::field(ui, self.fields, &spec, &list(weights), numbers::read_list, list).1;
                 if let Some(weights) = typed {
                     self.asks.edit(like(Some(Dependence::MovingAverage { weights })));
                 }
             }
             Some(Dependence::Autoregressive { correlation }) => {
-                let spec = Field::card(Id::new("ar correlation"), "Correlation of neighbours", 100.0);
+                let spec = Field::card(Id::unique("ar correlation"), "Correlation of neighbours", 100.0);
                 if let Some(correlation) = fields::real(ui, self.fields, &spec, *correlation) {
                     self.asks.edit(like(Some(Dependence::Autoregressive { correlation })));
                 }
             }
             Some(Dependence::WithoutReplacement { population }) => {
-                let spec = Field::card(Id::new("population"), "Size of the population", 100.0);
+                let spec = Field::card(Id::unique("population"), "Size of the population", 100.0);
                 let now = i64::try_from(*population).unwrap_or(i64::MAX);
                 let typed = fields::whole(ui, self.fields, &spec, now, (1, 1_000_000_000_000));
                 if let Some(population) = typed.and_then(|p| u64::try_from(p).ok()) {

@@ -142,7 +142,9 @@ impl PathDialog {
         match &self.purpose {
             Purpose::Open | Purpose::Save => vec!["json"],
             Purpose::Data(_) => vec!["csv", "txt", "tsv"],
-            Purpose::Export(kind) => EXPORTS.iter().filter(|(k, ..)| k == kind).map(|(_, ending, _)| *ending).collect(),
+            Purpose::Export(kind) => {
+                EXPORTS.iter().filter(|(k, ..)| k == kind).map(|(_, ending, _)| *ending).collect()
+            }
         }
     }
 
@@ -169,11 +171,13 @@ pub fn completions(text: &str, endings: &[&str]) -> Vec<String> {
         .filter_map(|entry| {
             let name = entry.file_name().into_string().ok()?;
             let is_folder = entry.path().is_dir();
-            let ending = Path::new(&name).extension().and_then(|e| e.to_str()).unwrap_or("").to_ascii_lowercase();
+            let ending =
+                Path::new(&name).extension().and_then(|e| e.to_str()).unwrap_or("").to_ascii_lowercase();
             let wanted = is_folder || endings.contains(&ending.as_str());
             let hidden = name.starts_with('.') && !start.starts_with('.');
-            (wanted && !hidden && name.starts_with(start) && name != start)
-                .then(|| format!("{folder}{name}{}", if is_folder { std::path::MAIN_SEPARATOR_STR } else { "" }))
+            (wanted && !hidden && name.starts_with(start) && name != start).then(|| {
+                format!("{folder}{name}{}", if is_folder { std::path::MAIN_SEPARATOR_STR } else { "" })
+            })
         })
         .collect();
     names.sort();
@@ -183,7 +187,7 @@ pub fn completions(text: &str, endings: &[&str]) -> Vec<String> {
 
 /// Draws the open dialog; answers at most once.
 pub fn show(ctx: &Context, dialog: &mut Dialog) -> Option<Answer> {
-    let shown = Modal::new(Id::new("dialog")).show(ctx, |ui| {
+    let shown = Modal::new(Id::unique("dialog")).show(ctx, |ui| {
         ui.set_width((ctx.content_rect().width() - 64.0).min(560.0));
         match dialog {
             Dialog::Path(dialog) => path(ui, dialog),
@@ -193,7 +197,8 @@ pub fn show(ctx: &Context, dialog: &mut Dialog) -> Option<Answer> {
         }
     });
     let escape = ctx.input_mut(|input| input.consume_key(egui::Modifiers::NONE, Key::Escape));
-    shown.inner.or((escape || shown.should_close()).then_some(Answer::Cancel))
+    let left = escape || shown.should_close();
+    shown.inner.or(left.then_some(Answer::Cancel))
 }
 
 fn title(ui: &mut Ui, words: &str) {
@@ -213,9 +218,13 @@ fn path(ui: &mut Ui, dialog: &mut PathDialog) -> Option<Answer> {
             }
         });
     }
-    let id = Id::new("path");
-    let edit = TextEdit::singleline(&mut dialog.text).id(id).desired_width(f32::INFINITY).hint_text("path of the file");
-    let response = ui.name_inputs("Path", |ui| ui.add(edit));
+    let id = Id::unique("path");
+    let edit = TextEdit::singleline(&mut dialog.text)
+        .id(id)
+        .desired_width(f32::INFINITY)
+        .hint_text("path of the file");
+    let response = ui.add(edit);
+    super::fields::name(ui, &response, "Path");
     if ui.memory(|memory| memory.focused().is_none()) {
         response.request_focus();
     }
@@ -234,7 +243,11 @@ fn path(ui: &mut Ui, dialog: &mut PathDialog) -> Option<Answer> {
             for offer in offers {
                 let name = offer.trim_end_matches(std::path::MAIN_SEPARATOR);
                 let name = name.rsplit(std::path::MAIN_SEPARATOR).next().unwrap_or(name);
-                let shown = if offer.ends_with(std::path::MAIN_SEPARATOR) { format!("{name}/") } else { name.to_owned() };
+                let shown = if offer.ends_with(std::path::MAIN_SEPARATOR) {
+                    format!("{name}/")
+                } else {
+                    name.to_owned()
+                };
                 if ui.add(Button::new(shown).frame_when_inactive(false)).clicked() {
                     take(ui, dialog, id, offer);
                 }
@@ -244,8 +257,10 @@ fn path(ui: &mut Ui, dialog: &mut PathDialog) -> Option<Answer> {
     if let Purpose::Data(_) = dialog.purpose {
         ui.horizontal_wrapped(|ui| {
             ui.label("column");
-            let edit = TextEdit::singleline(&mut dialog.column).desired_width(120.0).hint_text("name or number");
-            ui.name_inputs("Column", |ui| ui.add(edit));
+            let edit =
+                TextEdit::singleline(&mut dialog.column).desired_width(120.0).hint_text("name or number");
+            let response = ui.add(edit);
+            super::fields::name(ui, &response, "Column");
             for column in dialog.columns.clone() {
                 if ui.selectable_label(column == dialog.column, &column).clicked() {
                     dialog.column = column;
@@ -254,7 +269,9 @@ fn path(ui: &mut Ui, dialog: &mut PathDialog) -> Option<Answer> {
         });
     }
     if dialog.replaces {
-        ui.label(RichText::new("⚠ This file exists and will be replaced.").color(tokens::palette(ui).undecided));
+        ui.label(
+            RichText::new("⚠ This file exists and will be replaced.").color(tokens::palette(ui).undecided),
+        );
     }
     ui.add_space(tokens::GAP);
     let entered = response.lost_focus() && ui.input(|input| input.key_pressed(Key::Enter));

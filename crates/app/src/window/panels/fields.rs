@@ -133,6 +133,7 @@ fn edit_text(ui: &mut Ui, spec: &Field<'_>, entry: &mut Entry) -> Response {
         }
         Look::Card(width) => TextEdit::singleline(&mut entry.text)
             .desired_width(width - 12.0)
+            .min_size(egui::vec2(width - 12.0, 0.0))
             .margin(Margin::symmetric(6, 3))
             .frame(frame.inner_margin(Margin::symmetric(6, 3))),
         Look::Lines(width, rows) => TextEdit::multiline(&mut entry.text)
@@ -141,7 +142,8 @@ fn edit_text(ui: &mut Ui, spec: &Field<'_>, entry: &mut Entry) -> Response {
             .frame(frame.inner_margin(Margin::symmetric(6, 3))),
     };
     let hint = RichText::new(spec.hint).color(palette.muted);
-    let response = ui.name_inputs(spec.label, |ui| ui.add(edit.id(spec.id).hint_text(hint)));
+    let response = ui.add(edit.id(spec.id).hint_text(hint));
+    name(ui, &response, spec.label);
     if spec.look == Look::Word {
         let color = match (wrong, response.has_focus() || response.hovered()) {
             (true, _) => palette.fails,
@@ -154,6 +156,11 @@ fn edit_text(ui: &mut Ui, spec: &Field<'_>, entry: &mut Entry) -> Response {
         ui.painter().rect_stroke(response.rect, tokens::CORNER, stroke, egui::StrokeKind::Inside);
     }
     response
+}
+
+/// Names an input in the accessibility tree.
+pub fn name(ui: &Ui, response: &Response, label: &str) {
+    ui.ctx().accesskit_node_builder(response.id, |node| node.set_label(label));
 }
 
 /// Underlines a control of the plan sentence.
@@ -176,7 +183,8 @@ pub fn optional_real(
     value: Option<f64>,
 ) -> Option<Option<f64>> {
     let write = |value: &Option<f64>| value.map_or_else(String::new, numbers::plain);
-    let read = |text: &str| if text.trim().is_empty() { Ok(None) } else { numbers::read_real(text).map(Some) };
+    let read =
+        |text: &str| if text.trim().is_empty() { Ok(None) } else { numbers::read_real(text).map(Some) };
     field(ui, fields, spec, &write(&value), read, write).1
 }
 
@@ -193,7 +201,13 @@ pub fn percent_digits(share: f64) -> String {
 }
 
 /// A field for a whole number.
-pub fn whole(ui: &mut Ui, fields: &mut Fields, spec: &Field<'_>, value: i64, ends: (i64, i64)) -> Option<i64> {
+pub fn whole(
+    ui: &mut Ui,
+    fields: &mut Fields,
+    spec: &Field<'_>,
+    value: i64,
+    ends: (i64, i64),
+) -> Option<i64> {
     let write = |value: &i64| numbers::thousands(*value as f64).replace('−', "-");
     field(ui, fields, spec, &write(&value), |text| numbers::read_whole(text, ends.0, ends.1), write).1
 }

@@ -63,6 +63,18 @@ pub fn show(ui: &mut Ui, view: &View<'_>, now: Circumstances, asks: &mut Asks) {
     }
 }
 
+/// Draws what there is to say before the first answer.
+pub fn waiting(ui: &mut Ui, now: Circumstances, asks: &mut Asks) {
+    let palette = tokens::palette(ui);
+    ui.horizontal_wrapped(|ui| {
+        ui.spacing_mut().item_spacing.x = 14.0;
+        let words =
+            if now.has_problem { "No finding: this plan cannot be assessed." } else { "Computing …" };
+        ui.label(RichText::new(words).font(tokens::bold(tokens::FINDING)));
+        status(ui, Circumstances { has_problem: false, ..now }, palette, asks);
+    });
+}
+
 /// Where the work stands, or why the finding is an old one.
 fn status(ui: &mut Ui, now: Circumstances, palette: &Palette, asks: &mut Asks) {
     if now.has_problem {
@@ -72,7 +84,9 @@ fn status(ui: &mut Ui, now: Circumstances, palette: &Palette, asks: &mut Asks) {
     match now.progress {
         Some(progress) if progress.elapsed.as_millis() > 250 => {
             let doing = if progress.stage == Stage::Planned { "computing" } else { "looking at other n" };
-            ui.label(RichText::new(format!("{doing} … {:.0} %", progress.fraction * 100.0)).color(palette.muted));
+            ui.label(
+                RichText::new(format!("{doing} … {:.0} %", progress.fraction * 100.0)).color(palette.muted),
+            );
             if ui.small_button("Stop").clicked() {
                 asks.command(Command::Stop);
             }
@@ -89,14 +103,20 @@ fn status(ui: &mut Ui, now: Circumstances, palette: &Palette, asks: &mut Asks) {
 
 /// "Safe from n = 312 on (every n up to 10,000 checked)."
 fn safe_from(view: &View<'_>) -> String {
-    let Some(full) = view.full.filter(|_| view.full_is_current) else { return "Safe from n = …".to_owned() };
+    let Some(full) = view.full.filter(|_| view.full_is_current) else {
+        return "Safe from n = …".to_owned();
+    };
     safe_from_words(&full.report.verdict)
 }
 
 fn safe_from_words(verdict: &Verdict) -> String {
     let Some(checked) = &verdict.checked else { return "Safe from: not searched.".to_owned() };
     let to = thousands(checked.to as f64);
-    let how = if checked.every_n { format!("every n up to {to} checked") } else { format!("some n up to {to} checked") };
+    let how = if checked.every_n {
+        format!("every n up to {to} checked")
+    } else {
+        format!("some n up to {to} checked")
+    };
     match verdict.safe_from {
         Some(n) => format!("Safe from n = {} on ({how}).", thousands(n as f64)),
         None => format!("Not safe from any n up to {to} on ({how})."),
@@ -112,7 +132,8 @@ fn cheapest(view: &View<'_>) -> Option<String> {
     let remedies = &full.report.remedies;
     match remedies.iter().find(|remedy| remedy.holds) {
         Some(remedy) => {
-            let actual = remedy.actual.map_or_else(String::new, |a| format!(" ({})", with_error(a.value, a.error)));
+            let actual =
+                remedy.actual.map_or_else(String::new, |a| format!(" ({})", with_error(a.value, a.error)));
             Some(format!("Remedy that holds at this n: {}{actual}.", remedy.name))
         }
         None if remedies.is_empty() => None,
@@ -125,7 +146,7 @@ pub fn method(view: &View<'_>) -> String {
     let report = &view.shown.report;
     let mut words = vec![report.method.detail.clone()];
     if let Some(distance) = report.distance.kolmogorov {
-        words.push(format!("error ≤ {}", shown(distance.error, 1)));
+        words.push(format!("error of the distance ≤ {}", shown(distance.error, 1)));
     }
     if let Some(draws) = report.method.draws {
         words.push(format!("{} draws", thousands(draws as f64)));
@@ -149,9 +170,12 @@ mod tests {
             last_failing: Some(1311),
             checked: Some(Checked { from: 1, to: 10_000, every_n: true, which: None }),
         };
-        assert_eq!(safe_from_words(&verdict), "Safe from n = 1312 on (every n up to 10,000 checked).");
+        assert_eq!(safe_from_words(&verdict), "Safe from n = 1,312 on (every n up to 10,000 checked).");
         verdict.safe_from = None;
-        assert_eq!(safe_from_words(&verdict), "Not safe from any n up to 10,000 on (every n up to 10,000 checked).");
+        assert_eq!(
+            safe_from_words(&verdict),
+            "Not safe from any n up to 10,000 on (every n up to 10,000 checked)."
+        );
         verdict.checked = None;
         assert_eq!(safe_from_words(&verdict), "Safe from: not searched.");
     }

@@ -11,18 +11,22 @@ pub fn show(ui: &mut Ui, view: &View<'_>, slot: usize) {
     let report = &view.shown.report;
     let summand = report.summands.get(slot).unwrap_or(&report.summand);
     let palette = tokens::palette(ui);
-    Frame::new().fill(palette.well).corner_radius(tokens::CORNER).inner_margin(Margin::symmetric(10, 6)).show(ui, |ui| {
-        ui.set_width(ui.available_width());
-        ui.spacing_mut().item_spacing.y = 2.0;
-        picture(ui, view, slot);
-        let unit = view.scenario.quantity.as_ref().and_then(|q| q.unit.as_deref()).unwrap_or("");
-        for line in facts(summand, unit) {
-            ui.label(RichText::new(line).size(12.0));
-        }
-        for warning in &summand.warnings {
-            ui.label(RichText::new(format!("⚠ {warning}")).size(12.0).color(palette.undecided));
-        }
-    });
+    Frame::new()
+        .fill(palette.well)
+        .corner_radius(tokens::CORNER)
+        .inner_margin(Margin::symmetric(10, 6))
+        .show(ui, |ui| {
+            ui.set_width(ui.available_width());
+            ui.spacing_mut().item_spacing.y = 2.0;
+            picture(ui, view, slot);
+            let unit = view.scenario.quantity.as_ref().and_then(|q| q.unit.as_deref()).unwrap_or("");
+            for line in facts(summand, unit) {
+                ui.label(RichText::new(line).size(12.0));
+            }
+            for warning in &summand.warnings {
+                ui.label(RichText::new(format!("⚠ {warning}")).size(12.0).color(palette.undecided));
+            }
+        });
 }
 
 /// What is known of a law, a line each.
@@ -52,7 +56,9 @@ fn picture(ui: &mut Ui, view: &View<'_>, slot: usize) {
     }
     let palette = tokens::palette(ui);
     let (rect, response) = ui.allocate_exact_size(vec2(ui.available_width(), 58.0), Sense::hover());
-    response.widget_info(|| WidgetInfo::labeled(egui::accesskit::Role::Image, true, "Picture of the law of one summand"));
+    response.widget_info(|| {
+        WidgetInfo::labeled(egui::accesskit::Role::Image, true, "Picture of the law of one summand")
+    });
     let painter = ui.painter().with_clip_rect(rect.expand(1.0).intersect(ui.clip_rect()));
     let ground = rect.bottom() - 14.0;
     let x = |value: f64| rect.left() + ((value - low) / (high - low)) as f32 * rect.width();
@@ -62,7 +68,9 @@ fn picture(ui: &mut Ui, view: &View<'_>, slot: usize) {
         let path: Vec<_> = picture
             .density
             .iter()
-            .map(|&[value, density]| pos2(x(value), ground - (density.min(tallest) / tallest * height) as f32))
+            .map(|&[value, density]| {
+                pos2(x(value), ground - (density.min(tallest) / tallest * height) as f32)
+            })
             .collect();
         let fill = palette.accent.gamma_multiply(0.18);
         for pair in path.windows(2) {
@@ -79,6 +87,18 @@ fn picture(ui: &mut Ui, view: &View<'_>, slot: usize) {
     }
     painter.hline(rect.x_range(), ground, Stroke::new(1.0, palette.muted));
     let font = tokens::regular(10.5);
-    painter.text(pos2(rect.left(), ground + 2.0), egui::Align2::LEFT_TOP, shown(low, 3), font.clone(), palette.muted);
-    painter.text(pos2(rect.right(), ground + 2.0), egui::Align2::RIGHT_TOP, shown(high, 3), font, palette.muted);
+    painter.text(
+        pos2(rect.left(), ground + 2.0),
+        egui::Align2::LEFT_TOP,
+        shown(low, 3),
+        font.clone(),
+        palette.muted,
+    );
+    painter.text(
+        pos2(rect.right(), ground + 2.0),
+        egui::Align2::RIGHT_TOP,
+        shown(high, 3),
+        font,
+        palette.muted,
+    );
 }

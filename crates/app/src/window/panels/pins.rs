@@ -28,7 +28,7 @@ pub fn show(ui: &mut Ui, fields: &mut Fields, view: &View<'_>, asks: &mut Asks) 
             for (index, pin) in view.pins.iter().enumerate() {
                 sample(ui, palette.ghosts[index % 4], dash::GHOSTS[index % 4]);
                 let label = format!("Name of pin {}", index + 1);
-                let spec = Field::card(Id::new(("pin", index)), &label, 170.0);
+                let spec = Field::card(Id::unique(("pin", index)), &label, 170.0);
                 if let Some(name) = fields::text(ui, fields, &spec, &pin.name) {
                     asks.list.push(Ask::RenamePin(index, name));
                 }

@@ -15,7 +15,11 @@ use gaussgap_conclusions::scenario::{
 
 /// The claim kinds: the name in files, the words of the sentence, and what each is for.
 const CLAIMS: [(&str, &str, &str); 6] = [
-    ("interval", "report an interval for", "Interval: mean ± z·σ/√n or t·s/√n, coverage and misses on each side"),
+    (
+        "interval",
+        "report an interval for",
+        "Interval: mean ± z·σ/√n or t·s/√n, coverage and misses on each side",
+    ),
     ("test", "test", "Test: size, and power where a shift is planned"),
     ("threshold", "state a chance for", "Threshold: the chance that the statistic stays within a limit"),
     ("quantile", "state a quantile of", "Quantile: a high or low point of the statistic"),
@@ -38,6 +42,7 @@ pub fn show(
     let before = fields.problems.len();
     ui.horizontal_wrapped(|ui| {
         ui.spacing_mut().item_spacing.x = 0.0;
+        ui.spacing_mut().interact_size.y = 10.0;
         Sentence { ui, fields, scenario, near, asks }.write();
     });
     n_slider(ui, scenario, asks);
@@ -45,7 +50,10 @@ pub fn show(
         super::finding::mistake(ui, &format!("{label}: {problem}"));
     }
     for problem in problems.iter().filter(|problem| is_about_plan(&problem.pointer)) {
-        super::finding::mistake(ui, &format!("{}: {}", problem.pointer.trim_start_matches('/'), problem.message));
+        super::finding::mistake(
+            ui,
+            &format!("{}: {}", problem.pointer.trim_start_matches('/'), problem.message),
+        );
     }
 }
 
@@ -93,7 +101,9 @@ impl Sentence<'_> {
         self.claim_kind();
         match self.scenario.claim {
             Claim::Interval { level, sides, spread } => self.interval(level, sides, spread),
-            Claim::Test { significance, sides, spread, shift } => self.test(significance, sides, spread, shift),
+            Claim::Test { significance, sides, spread, shift } => {
+                self.test(significance, sides, spread, shift)
+            }
             Claim::Threshold { at, direction } => self.threshold(at, direction),
             Claim::Quantile { p } => self.quantile(p),
             Claim::Deviation { epsilon, probability } => self.deviation(epsilon, probability),
@@ -133,7 +143,9 @@ impl Sentence<'_> {
                 self.say("the ");
                 let words = if self.scenario.statistic == Statistic::Mean { "mean" } else { "sum" };
                 let options = [(Statistic::Mean, "mean"), (Statistic::Sum, "sum")];
-                if let Some(statistic) = choice(self.ui, "Statistic", words, &options, &self.scenario.statistic) {
+                if let Some(statistic) =
+                    choice(self.ui, "Statistic", words, &options, &self.scenario.statistic)
+                {
                     self.asks.edit(Edit::Statistic(statistic));
                 }
                 self.say(" of ");
@@ -143,7 +155,8 @@ impl Sentence<'_> {
             }
             Source::Parts { parts } => {
                 let total = self.scenario.source.total();
-                let kinds = if parts.len() == 1 { "kind".to_owned() } else { format!("{} kinds", parts.len()) };
+                let kinds =
+                    if parts.len() == 1 { "kind".to_owned() } else { format!("{} kinds", parts.len()) };
                 self.say(&format!("the sum of {} ", numbers::thousands(total as f64)));
                 self.quantity(total);
                 self.say(&format!(" of {kinds}"));
@@ -161,7 +174,7 @@ impl Sentence<'_> {
     }
 
     fn n(&mut self, slot: usize, n: u64, label: &str) {
-        let spec = Field::word(Id::new(("n", slot)), label);
+        let spec = Field::word(Id::unique(("n", slot)), label);
         let n = i64::try_from(n).unwrap_or(i64::MAX);
         let typed = fields::whole(self.ui, self.fields, &spec, n, (1, LARGEST_N as i64));
         if let Some(n) = typed.and_then(|n| u64::try_from(n).ok()) {
@@ -183,12 +196,12 @@ impl Sentence<'_> {
         Popup::menu(&response).close_behavior(PopupCloseBehavior::CloseOnClickOutside).show(|ui| {
             ui.set_width(220.0);
             ui.label("Name, in the singular");
-            let spec = Field::card(Id::new("quantity name"), "Name of the quantity", 210.0);
+            let spec = Field::card(Id::unique("quantity name"), "Name of the quantity", 210.0);
             if let Some(name) = fields::text(ui, fields, &spec, &name) {
                 asks.edit(Edit::QuantityName(name));
             }
             ui.label("Unit");
-            let spec = Field::card(Id::new("quantity unit"), "Unit of the quantity", 210.0);
+            let spec = Field::card(Id::unique("quantity unit"), "Unit of the quantity", 210.0);
             if let Some(unit) = fields::text(ui, fields, &spec, quantity.unit.as_deref().unwrap_or("")) {
                 asks.edit(Edit::QuantityUnit(unit));
             }
@@ -198,7 +211,7 @@ impl Sentence<'_> {
     fn interval(&mut self, level: f64, sides: Sides, spread: Spread) {
         self.subject();
         self.say(", at a level of ");
-        let spec = Field::word(Id::new("level"), "Level");
+        let spec = Field::word(Id::unique("level"), "Level");
         if let Some(level) = fields::percent(self.ui, self.fields, &spec, level) {
             self.asks.edit(Edit::Claim(Claim::Interval { level, sides, spread }));
         }
@@ -219,7 +232,7 @@ impl Sentence<'_> {
         };
         self.subject();
         self.say(" at a significance of ");
-        let spec = Field::word(Id::new("significance"), "Significance");
+        let spec = Field::word(Id::unique("significance"), "Significance");
         if let Some(significance) = fields::percent(self.ui, self.fields, &spec, significance) {
             self.asks.edit(claim(significance, sides, spread, shift));
         }
@@ -232,7 +245,7 @@ impl Sentence<'_> {
             self.asks.edit(claim(significance, sides, spread, shift));
         }
         self.say(", planning for a shift of ");
-        let spec = Field { hint: "no", ..Field::word(Id::new("shift"), "Planned shift in sd") };
+        let spec = Field { hint: "no", ..Field::word(Id::unique("shift"), "Planned shift in sd") };
         if let Some(shift) = fields::optional_real(self.ui, self.fields, &spec, shift) {
             self.asks.edit(claim(significance, sides, spread, shift));
         }
@@ -249,7 +262,7 @@ impl Sentence<'_> {
             self.asks.edit(Edit::Claim(Claim::Threshold { at, direction }));
         }
         self.say(" ");
-        let spec = Field::word(Id::new("threshold"), "Threshold");
+        let spec = Field::word(Id::unique("threshold"), "Threshold");
         if let Some(at) = fields::real(self.ui, self.fields, &spec, at) {
             self.asks.edit(Edit::Claim(Claim::Threshold { at, direction }));
         }
@@ -260,7 +273,7 @@ impl Sentence<'_> {
     fn quantile(&mut self, p: f64) {
         self.subject();
         self.say(": the ");
-        let spec = Field::word(Id::new("quantile p"), "Quantile");
+        let spec = Field::word(Id::unique("quantile p"), "Quantile");
         if let Some(p) = fields::percent(self.ui, self.fields, &spec, p) {
             self.asks.edit(Edit::Claim(Claim::Quantile { p }));
         }
@@ -270,13 +283,14 @@ impl Sentence<'_> {
     fn deviation(&mut self, epsilon: f64, probability: Option<f64>) {
         self.subject();
         self.say(" from its expectation: more than ");
-        let spec = Field::word(Id::new("epsilon"), "Deviation");
+        let spec = Field::word(Id::unique("epsilon"), "Deviation");
         if let Some(epsilon) = fields::real(self.ui, self.fields, &spec, epsilon) {
             self.asks.edit(Edit::Claim(Claim::Deviation { epsilon, probability }));
         }
         self.unit();
         self.say(" with a chance of at most ");
-        let spec = Field { hint: "any", ..Field::word(Id::new("deviation p"), "Largest chance of deviating") };
+        let spec =
+            Field { hint: "any", ..Field::word(Id::unique("deviation p"), "Largest chance of deviating") };
         if let Some(probability) = fields::optional_real(self.ui, self.fields, &spec, probability) {
             self.asks.edit(Edit::Claim(Claim::Deviation { epsilon, probability }));
         }
@@ -290,25 +304,21 @@ impl Sentence<'_> {
     }
 
     fn sides(&mut self, sides: Sides) -> Option<Sides> {
-        let options = [
-            (Sides::Two, "two-sided"),
-            (Sides::Lower, "lower side only"),
-            (Sides::Upper, "upper side only"),
-        ];
+        let options =
+            [(Sides::Two, "two-sided"), (Sides::Lower, "lower side only"), (Sides::Upper, "upper side only")];
         let words = options.iter().find(|(known, _)| *known == sides).map_or("two-sided", |(_, words)| words);
         choice(self.ui, "Sides", words, &options, &sides)
     }
 
     fn spread(&mut self, spread: Spread) -> Option<Spread> {
-        let options =
-            [(Spread::Known, "known beforehand"), (Spread::Estimated, "estimated from the data")];
+        let options = [(Spread::Known, "known beforehand"), (Spread::Estimated, "estimated from the data")];
         let words = options.iter().find(|(known, _)| *known == spread).map_or("known", |(_, words)| words);
         choice(self.ui, "Spread", words, &options, &spread)
     }
 
     fn tolerance(&mut self) {
         let sd = matches!(self.scenario.claim, Claim::Quantile { .. });
-        let spec = Field::word(Id::new("tolerance"), "Tolerance");
+        let spec = Field::word(Id::unique("tolerance"), "Tolerance");
         let (amount, relative) = match self.scenario.tolerance {
             Tolerance::Absolute(amount) => (amount, false),
             Tolerance::Relative(amount) => (amount, true),
@@ -321,8 +331,9 @@ impl Sentence<'_> {
             if scale == 1.0 { numbers::plain(*amount) } else { fields::percent_digits(*amount) }
         };
         let read = |text: &str| {
-            let value = numbers::read_real(text)?;
-            let amount = if text.contains('%') || scale == 1.0 { value } else { value / 100.0 };
+            let plain = text.contains('%') || scale == 1.0;
+            let amount =
+                if plain { numbers::read_real(text)? } else { numbers::read_real(&format!("{text}%"))? };
             if amount > 0.0 { Ok(amount) } else { Err("must be greater than 0".to_owned()) }
         };
         let typed = fields::field(self.ui, self.fields, &spec, &write(&amount), read, write).1;
@@ -364,7 +375,9 @@ fn claim_of(kind: &str, scenario: &Scenario, near: Option<OwnUnits>) -> Claim {
     match kind {
         "interval" => Claim::Interval { level: 0.95, sides: Sides::Two, spread },
         "test" => Claim::Test { significance: 0.05, sides: Sides::Two, spread, shift: None },
-        "threshold" => Claim::Threshold { at: round_to(near.center + 2.0 * near.unit, 3), direction: Direction::AtMost },
+        "threshold" => {
+            Claim::Threshold { at: round_to(near.center + 2.0 * near.unit, 3), direction: Direction::AtMost }
+        }
         "quantile" => Claim::Quantile { p: 0.99 },
         "deviation" => Claim::Deviation { epsilon: round_to(2.0 * near.unit, 2), probability: None },
         _ => Claim::Curve,
@@ -391,7 +404,11 @@ pub fn word_button(ui: &mut Ui, label: &str, words: &str) -> Response {
     let name = format!("{label}: {words}");
     response.widget_info(|| WidgetInfo::labeled(egui::accesskit::Role::Button, true, &name));
     let strong = response.hovered() || response.has_focus();
-    fields::underline(ui, &response, if strong { palette.accent } else { palette.accent.gamma_multiply(0.6) });
+    fields::underline(
+        ui,
+        &response,
+        if strong { palette.accent } else { palette.accent.gamma_multiply(0.6) },
+    );
     response
 }
 

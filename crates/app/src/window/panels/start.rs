@@ -72,12 +72,20 @@ fn card(ui: &mut Ui, width: f32, sample: &Sample) -> bool {
     let palette = tokens::palette(ui);
     let (rect, response) = ui.allocate_exact_size(vec2(width, 112.0), Sense::click());
     response.widget_info(|| WidgetInfo::labeled(egui::accesskit::Role::Button, true, &sample.title));
+    if response.gained_focus() {
+        response.scroll_to_me(None);
+    }
     let held = response.hovered() || response.has_focus();
     let line = if held { palette.accent } else { palette.line };
     let stroke = egui::Stroke::new(if response.has_focus() { 2.0 } else { 1.0 }, line);
     let ground = if held { palette.well } else { palette.card };
     ui.painter().rect(rect.shrink(1.0), tokens::CORNER, ground, stroke, egui::StrokeKind::Inside);
-    let mut child = ui.new_child(UiBuilder::new().id_salt(&sample.title).max_rect(rect.shrink2(vec2(12.0, 9.0))));
+    let mut child = ui.new_child(
+        UiBuilder::new()
+            .layout(egui::Layout::top_down(egui::Align::Min))
+            .id_salt(&sample.title)
+            .max_rect(rect.shrink2(vec2(12.0, 9.0))),
+    );
     child.set_clip_rect(rect.intersect(ui.clip_rect()));
     child.spacing_mut().item_spacing.y = 3.0;
     let title = RichText::new(&sample.title).font(tokens::bold(13.5)).color(palette.accent);

@@ -30,7 +30,9 @@ impl Cache {
                         problems.push(problem);
                     }
                 }
-                Err(message) => problems.push(Problem { pointer: format!("{}/path", request.pointer), message }),
+                Err(message) => {
+                    problems.push(Problem { pointer: format!("{}/path", request.pointer), message })
+                }
             }
         }
         if problems.is_empty() { Ok(filled) } else { Err(problems) }

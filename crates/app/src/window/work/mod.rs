@@ -5,11 +5,11 @@
 
 pub mod data;
 
+use super::model::prepared::Prepared;
 use gaussgap_conclusions::report::Report;
 use gaussgap_conclusions::scenario::Scenario;
 use gaussgap_conclusions::{AssessError, Effort, Problem};
 use gaussgap_simulation::work::Work;
-use super::model::prepared::Prepared;
 use std::path::PathBuf;
 use std::sync::mpsc::{Receiver, Sender, channel};
 use std::sync::{Arc, Condvar, Mutex, MutexGuard, PoisonError};
@@ -257,8 +257,12 @@ fn serve(shared: &Shared, sender: &Sender<Answer>, engine: &Engine, wake: &Wake)
                 None => break,
             };
             let failed = outcome.is_err();
-            let answer =
-                Answer { generation: request.generation, scenario: Arc::clone(&request.scenario), stage, outcome };
+            let answer = Answer {
+                generation: request.generation,
+                scenario: Arc::clone(&request.scenario),
+                stage,
+                outcome,
+            };
             if stage == Stage::Full || failed {
                 shared.lock().running = None;
             }

@@ -148,13 +148,6 @@ impl PointMasses {
         result
     }
 
-    /// All masses times a factor.
-    pub(super) fn times(mut self, factor: f64) -> Self {
-        self.masses.iter_mut().for_each(|m| *m *= factor);
-        self.left_out *= factor;
-        self
-    }
-
     /// Total mass.
     pub(super) fn mass(&self) -> f64 {
         self.masses.iter().sum()

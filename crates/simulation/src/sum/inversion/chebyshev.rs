@@ -7,7 +7,10 @@ use std::sync::OnceLock;
 /// Nodes per panel.
 const NODES: usize = 24;
 /// Halvings of an octave before its error is accepted as it is.
-const OCTAVE_DEPTH: u32 = 14;
+const OCTAVE_DEPTH: u32 = 12;
+
+/// What is interpolated: a value and a bound on its error.
+pub(super) type Function<'a> = dyn Fn(f64) -> (Complex64, f64) + Sync + 'a;
 
 /// A Chebyshev series on one interval of its variable.
 #[derive(Debug, Clone)]
@@ -35,15 +38,15 @@ impl Panel {
 #[derive(Debug, Clone)]
 pub(super) struct Interpolant {
     panels: Vec<Panel>,
-    /// Estimated absolute error of the interpolation (not of the function).
+    /// Estimated absolute error of interpolation and function together.
     pub(super) error: f64,
 }
 
 impl Interpolant {
     /// Interpolates f on [low, high]: panels are halved until the last coefficients fall below
-    /// `tolerance` × the largest value on the panel (or `floor`, whichever is larger).
+    /// `tolerance` × the largest value on the panel, `floor` or the function's own error, whichever is largest.
     pub(super) fn build(
-        f: &(dyn Fn(f64) -> Complex64 + Sync),
+        f: &Function,
         low: f64,
         high: f64,
         tolerance: f64,
@@ -55,19 +58,13 @@ impl Interpolant {
         result
     }
 
-    fn extend(
-        &mut self,
-        f: &(dyn Fn(f64) -> Complex64 + Sync),
-        low: f64,
-        high: f64,
-        tolerance: f64,
-        floor: f64,
-        halvings: u32,
-    ) {
+    fn extend(&mut self, f: &Function, low: f64, high: f64, tolerance: f64, floor: f64, halvings: u32) {
         let (middle, half) = (0.5 * (low + high), 0.5 * (high - low));
-        let values: Vec<Complex64> = (0..NODES)
+        let evaluated: Vec<(Complex64, f64)> = (0..NODES)
             .map(|j| f(middle + half * (std::f64::consts::PI * (j as f64 + 0.5) / NODES as f64).cos()))
             .collect();
+        let noise = evaluated.iter().map(|v| v.1).fold(0.0, f64::max);
+        let values: Vec<Complex64> = evaluated.into_iter().map(|v| v.0).collect();
         let mut coefficients: Vec<Complex64> = (0..NODES)
             .map(|k| {
                 let sum: Complex64 = values
@@ -84,14 +81,14 @@ impl Interpolant {
         coefficients[0] *= 0.5;
         let largest = values.iter().map(|v| v.norm()).fold(0.0, f64::max);
         let tail = coefficients[NODES - 3..].iter().map(|c| c.norm()).fold(0.0, f64::max);
-        let wanted = (tolerance * largest).max(floor);
+        let wanted = (tolerance * largest).max(floor).max(noise);
         let too_small = half <= 1e-13 * middle.abs();
         if tail > wanted && halvings > 0 && !too_small {
             self.extend(f, low, middle, tolerance, floor, halvings - 1);
             self.extend(f, middle, high, tolerance, floor, halvings - 1);
             return;
         }
-        self.error = self.error.max(4.0 * tail + 2.0 * f64::EPSILON * largest);
+        self.error = self.error.max(4.0 * tail + 2.0 * f64::EPSILON * largest + 2.0 * noise);
         let needed = coefficients.iter().rposition(|c| c.norm() > 0.05 * wanted).map_or(1, |k| k + 1);
         coefficients.truncate(needed.max(1));
         self.panels.push(Panel { high, middle, half, coefficients });
@@ -126,28 +123,15 @@ impl Octaves {
 
     /// Fills the octaves that meet [low, high], side by side. Filling one octave runs on one thread only, so
     /// that a thread which waits for it never has to help with it.
-    pub(super) fn prepare(
-        &self,
-        f: &(dyn Fn(f64) -> Complex64 + Sync),
-        low: f64,
-        high: f64,
-        tolerance: f64,
-        floor: &(dyn Fn(f64) -> f64 + Sync),
-    ) {
+    pub(super) fn prepare(&self, f: &Function, low: f64, high: f64, tolerance: f64) {
         let (first, last) = (low.log2().floor() as i32, high.log2().floor() as i32);
         (first..=last).into_par_iter().for_each(|k| {
-            self.evaluate(f, f64::from(k).exp2() * 1.5, tolerance, floor);
+            self.evaluate(f, f64::from(k).exp2() * 1.5, tolerance);
         });
     }
 
-    /// The value at t and the interpolation error of its octave; f is called where the octave is new.
-    pub(super) fn evaluate(
-        &self,
-        f: &(dyn Fn(f64) -> Complex64 + Sync),
-        t: f64,
-        tolerance: f64,
-        floor: impl Fn(f64) -> f64,
-    ) -> (Complex64, f64) {
+    /// The value at t and the error of its octave; f is called where the octave is new.
+    pub(super) fn evaluate(&self, f: &Function, t: f64, tolerance: f64) -> (Complex64, f64) {
         let index = (t.log2().floor() as i32 - self.lowest).clamp(0, self.octaves.len() as i32 - 1);
         let table = self.octaves[index as usize].get_or_init(|| {
             let k = f64::from(index + self.lowest);
@@ -157,7 +141,7 @@ impl Octaves {
                 low,
                 low + std::f64::consts::LN_2,
                 tolerance,
-                floor(k.exp2()),
+                0.0,
                 OCTAVE_DEPTH,
             )
         });

@@ -11,6 +11,10 @@ use super::transform::SummandTransform;
 use num_complex::Complex64;
 use rayon::prelude::*;
 use std::sync::Arc;
+use std::sync::atomic::{AtomicUsize, Ordering};
+
+/// Most evaluations of a density for one table.
+const BUDGET: usize = 4_000_000;
 
 /// The continuous part of one summand, times a scale.
 #[derive(Debug, Clone)]
@@ -127,12 +131,17 @@ impl PairSum {
                 })
             })
             .collect();
-        let tables: Vec<Interpolant> = intervals
-            .par_iter()
-            .map(|(a, b)| {
-                Interpolant::build(&|z| Complex64::new(result.integral(z, 24), 0.0), *a, *b, 1e-14, 1e-14, 44)
-            })
-            .collect();
+        let spent = AtomicUsize::new(0);
+        let cost = 24 * (result.first_edges.len() + result.second_edges.len());
+        let value = |z: f64| {
+            // Out of budget: an error too large to be accepted ends the refinement.
+            if spent.fetch_add(cost, Ordering::Relaxed) > BUDGET {
+                return (Complex64::ZERO, 1.0);
+            }
+            (Complex64::new(result.integral(z, 24), 0.0), 0.0)
+        };
+        let tables: Vec<Interpolant> =
+            intervals.par_iter().map(|(a, b)| Interpolant::build(&value, *a, *b, 1e-14, 1e-14, 44)).collect();
         let mut disagreement: f64 = 0.0;
         for k in 1..16 {
             let z = low + (high - low) * (f64::from(k) / 16.0);
@@ -163,7 +172,7 @@ impl PairSum {
         let mut sum = 0.0;
         for w in cuts.windows(2) {
             let (a, b) = (w[0], w[1]);
-            if !(b > a) {
+            if b <= a {
                 continue;
             }
             let middle = 0.5 * (a + b);

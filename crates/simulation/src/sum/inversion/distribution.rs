@@ -6,11 +6,10 @@ use super::fourier::FourierPart;
 use crate::special::normal;
 use std::sync::Arc;
 
-/// Point masses with running sums.
+/// A step function.
 #[derive(Debug)]
 pub(super) struct Steps {
     points: Vec<f64>,
-    masses: Vec<f64>,
     /// `running[k]` is the mass of the first k points.
     running: Vec<f64>,
 }
@@ -25,7 +24,7 @@ impl Steps {
             sum += m;
             running.push(sum);
         }
-        Self { points: masses.points, masses: masses.masses, running }
+        Self { points: masses.points, running }
     }
 
     fn at_or_below(&self, z: f64) -> f64 {
@@ -152,7 +151,7 @@ impl Distribution {
         }
         // Local extremes of the grid, by how promising they are.
         let curvature = self.fourier.as_ref().map_or(1.0, FourierPart::curvature) + 0.25;
-        let slack = (curvature * step * step).min(0.05);
+        let slack = (0.5 * curvature * step * step).min(0.05);
         let mut brackets: Vec<(f64, usize, f64)> = Vec::new();
         for k in 0..points.len() {
             for sign in [1.0, -1.0] {
@@ -167,19 +166,17 @@ impl Distribution {
         }
         brackets.sort_by(|a, b| b.0.total_cmp(&a.0));
         for (_, k, sign) in brackets.into_iter().take(48) {
-            for (a, b) in [(k.saturating_sub(1), k), (k, (k + 1).min(points.len() - 1))] {
-                if a == b {
-                    continue;
-                }
-                // Strictly between two neighbouring points there is no jump.
-                let (low, high) = (points[a], points[b]);
-                let steps = self.steps.as_ref().map_or(0.0, |s| s.at_or_below(low));
+            let (left, right) = (k.saturating_sub(1), (k + 1).min(points.len() - 1));
+            let smooth_here = gaps[k].0 == gaps[k].1;
+            let intervals =
+                if smooth_here { [Some((left, right)), None] } else { [Some((left, k)), Some((k, right))] };
+            for (a, b) in intervals.into_iter().flatten().filter(|(a, b)| a < b) {
+                // Strictly inside there is no jump, and no other grid point but a smooth one.
+                let steps = self.steps.as_ref().map_or(0.0, |s| s.at_or_below(points[a]));
                 let gap = |z: f64| sign * (self.smooth(z) + steps - normal::at_or_below(z));
-                let (z, value) = golden(&gap, low, high);
+                let (z, value) = golden(&gap, points[a], points[b]);
                 if value > best {
-                    best = value;
-                    at = z;
-                    before = z == high && self.steps.is_some();
+                    (best, at, before) = (value, z, false);
                 }
             }
         }
@@ -194,7 +191,7 @@ fn golden(f: &dyn Fn(f64) -> f64, low: f64, high: f64) -> (f64, f64) {
     let (mut x, mut y) = (b - RATIO * (b - a), a + RATIO * (b - a));
     let (mut fx, mut fy) = (f(x), f(y));
     for _ in 0..60 {
-        if (b - a).abs() < 1e-9 {
+        if (b - a).abs() < 1e-7 {
             break;
         }
         if fx >= fy {

@@ -11,6 +11,11 @@
 
 use num_complex::Complex64;
 use rustfft::FftPlanner;
+use std::cell::RefCell;
+
+thread_local! {
+    static PLANNER: RefCell<FftPlanner<f64>> = RefCell::new(FftPlanner::new());
+}
 
 /// Points of the interpolating polynomial.
 const POINTS: usize = 16;
@@ -47,18 +52,19 @@ impl FourierPart {
         for (k, c) in coefficients.iter().enumerate() {
             buffer[k] = c * Complex64::from_polar(1.0, (k as f64 + 0.5) * spacing * start);
         }
-        FftPlanner::new().plan_fft_inverse(length).process(&mut buffer);
+        PLANNER.with_borrow_mut(|planner| planner.plan_fft_inverse(length)).process(&mut buffer);
         let wanted = (((high - low) / step).ceil() as usize + 2 * POINTS + 1).min(length);
         let half_mass = 0.5 * mass;
-        let values = buffer
-            .iter()
-            .take(wanted)
-            .enumerate()
-            .map(|(m, v)| {
-                let turn = Complex64::from_polar(1.0, std::f64::consts::PI * m as f64 / length as f64);
-                half_mass + (v * turn).im
-            })
-            .collect();
+        let quarter = std::f64::consts::PI / length as f64;
+        let ratio = Complex64::from_polar(1.0, quarter);
+        let mut values = Vec::with_capacity(wanted);
+        for (block, chunk) in buffer[..wanted].chunks(32).enumerate() {
+            let mut turn = Complex64::from_polar(1.0, quarter * (32 * block) as f64);
+            for v in chunk {
+                values.push(half_mass + (v * turn).im);
+                turn *= ratio;
+            }
+        }
         let (mut interpolation, mut total) = (0.0, 0.0);
         for (k, c) in coefficients.iter().enumerate() {
             let half_turn = 0.5 * (k as f64 + 0.5) * spacing * step;

@@ -85,7 +85,7 @@ impl InversionSum {
         work.set_fraction(0.3);
         let fourier =
             if plan.frequencies > 0 { Some(transform_part(&terms, &plan, &mut error, work)?) } else { None };
-        if !(error <= LARGEST_ERROR) {
+        if error.is_nan() || error > LARGEST_ERROR {
             return Err(refuse(format!("the error of the inversion could only be bounded by {error:.1e}")));
         }
         let detail = describe(&plan, fourier.as_ref(), &few);
@@ -106,21 +106,21 @@ impl InversionSum {
     /// A probability F(z) with its error, also far outside the window.
     fn lower(&self, z: f64, raw: impl Fn(f64) -> f64) -> Figure {
         let d = &self.distribution;
-        let (cap_low, cap_high) =
-            (beyond(&self.terms, -z, false).min(1.0), 1.0 - beyond(&self.terms, z, true).min(1.0));
-        if z < d.low && cap_low <= LARGEST_ERROR {
-            return Figure::bound(0.5 * cap_low, 0.5 * cap_low);
+        if z >= d.low && z <= d.high {
+            return Figure::bound(raw(z).clamp(0.0, 1.0), d.error);
         }
-        if z > d.high && 1.0 - cap_high <= LARGEST_ERROR {
-            return Figure::bound(1.0 - 0.5 * (1.0 - cap_high), 0.5 * (1.0 - cap_high));
+        // Between the tail bounds lies the truth; where they are not sharp enough, the series is summed.
+        let (low, high) = if z < 0.0 {
+            (0.0, beyond(&self.terms, -z, false).min(1.0))
+        } else {
+            (1.0 - beyond(&self.terms, z, true).min(1.0), 1.0)
+        };
+        let bounded = Figure::bound(0.5 * (low + high), 0.5 * (high - low));
+        if high - low <= 1e-13 || !z.is_finite() {
+            return bounded;
         }
         let error = self.error_at(z);
-        // Nothing is known to LARGEST_ERROR only far outside the window the caller asked for.
-        if error > 0.5 || !z.is_finite() {
-            let (low, high) = if z < 0.0 { (0.0, cap_low) } else { (cap_high, 1.0) };
-            return Figure::bound(0.5 * (low + high), 0.5 * (high - low));
-        }
-        Figure::bound(raw(z).clamp(0.0, 1.0), error)
+        if error < bounded.error { Figure::bound(raw(z).clamp(0.0, 1.0), error) } else { bounded }
     }
 
     fn quantile_raw(&self, p: f64) -> f64 {
@@ -310,11 +310,12 @@ fn sample(terms: &[ScaledTerm], plan: &Plan, t: f64) -> (Complex64, f64) {
         })
         .collect();
     let weight: f64 = plan.subtracted.iter().map(|s| s.weight).sum();
-    let value = remainder(&values, plan.degree, &plan.subtracted);
+    let (value, sharp) = remainder(&values, plan.degree, &plan.subtracted);
     let modulus = log_modulus.exp();
-    let rounding =
-        4e-16 * (modulus * (2.0 + log_modulus.abs()) + weight * f64::from(u8::from(value.norm() > 1e-17)));
-    (value, modulus * slope + weight.min(value.norm() + modulus) * lowered.min(1.0) + rounding)
+    let copies: f64 = terms.iter().map(|t| t.count as f64).sum();
+    // The series branch errs relative to what is left, the difference relative to what is subtracted.
+    let size = if sharp { value.norm() } else { modulus + weight };
+    (value, modulus * slope + weight * lowered.min(1.0) + 3e-16 * size * (10.0 + copies))
 }
 
 /// Π φ_i^{n_i} at one frequency, and its error.
@@ -345,7 +346,7 @@ fn whole(terms: &[ScaledTerm], t: f64) -> (Complex64, f64) {
         return (Complex64::ZERO, 0.0);
     }
     let value = log.exp();
-    let rounding = 4e-16 * (1.0 + log.re.abs());
+    let rounding = 4e-16 * (1.0 + log.re.abs() + log.im.abs());
     (value, value.norm() * (relative.min(700.0).exp_m1() + rounding))
 }
 
@@ -398,7 +399,8 @@ impl StandardizedSum for InversionSum {
         *self.supremum.get_or_init(|| {
             let (value, at_z, just_below) = self.distribution.supremum();
             Distance {
-                kolmogorov: Figure::bound(value, self.distribution.error),
+                // The place of an extreme is found to 1e-7, its value therefore to 1e-14.
+                kolmogorov: Figure::bound(value, self.distribution.error + 1e-14),
                 at_z,
                 side: if just_below { Side::JustBelow } else { Side::At },
             }

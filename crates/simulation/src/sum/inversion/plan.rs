@@ -90,17 +90,17 @@ fn cut_off(terms: &[ScaledTerm], degree: i64, wanted: &[f64]) -> Vec<Option<(f64
         let height = ceiling(terms, t, degree);
         rungs.push(t);
         heights.push(height);
-        if height < 1e-25 {
+        if height < 1e-16 {
             break;
         }
     }
     let last = heights.len() - 1;
-    if heights[last] > 1e-17 {
+    if heights[last] > 2e-16 {
         return vec![None; wanted.len()];
     }
-    // Beyond the ladder the rest falls at least as fast as on its last rungs; its share is far below rounding.
+    // Beyond the ladder a power t^(−a) adds height/a in units of 1/π: the factor 100 covers every a ≥ 0.1.
     let share = LADDER.ln() / std::f64::consts::PI;
-    let mut rest = heights[last] * 100.0 * share;
+    let mut rest = heights[last] * 10.0 / std::f64::consts::PI;
     let mut sums = vec![rest; heights.len()];
     for k in (0..last).rev() {
         rest += heights[k] * share;
@@ -159,7 +159,8 @@ pub(super) fn plan(terms: &[ScaledTerm], reach_z: f64) -> Result<Plan, String> {
             };
             let period = (high + lower).max(upper - low).max(1.3 * (high - low));
             let frequencies = frequency * period / (2.0 * std::f64::consts::PI) + 1.0;
-            if frequencies > *most as f64 {
+            let reachable = terms.iter().all(|t| frequency * t.scale.abs() < t.summand.highest_frequency());
+            if frequencies > *most as f64 || !reachable {
                 continue;
             }
             let alias = beyond(terms, period - high, false).max(beyond(terms, period + low, true));

@@ -37,7 +37,8 @@ pub struct Ray<'a> {
     pub scale: f64,
 }
 
-const MAX_NODES: usize = 1 << 14;
+/// Most nodes of one sum.
+const MAX_NODES: usize = 1 << 13;
 
 impl<'a> Ray<'a> {
     /// A ray from `from`, with exponent and scale read off the family.
@@ -83,8 +84,9 @@ impl<'a> Ray<'a> {
     /// ∫₀^∞ f(from + direction·y) e^{−sy} dy along y = r e^{i·angle}.
     ///
     /// Needs Re(s e^{i·angle}) > 0. The step is halved until two trapezoidal sums agree to 1e-9 of ∫|integrand|;
-    /// as the error of the rule is squared by each halving, the finer sum is then good to rounding.
-    pub fn transform(&self, s: Complex64, angle: f64) -> RayValue {
+    /// as the error of the rule is squared by each halving, the finer sum is then good to rounding. An absolute
+    /// error of `enough` (0 for the best there is) ends the halving earlier.
+    pub fn transform(&self, s: Complex64, angle: f64, enough: f64) -> RayValue {
         let turn = Complex64::from_polar(1.0, angle);
         let s_turned = s * turn;
         let failed = RayValue { value: Complex64::ZERO, absolute: f64::INFINITY, error: f64::INFINITY };
@@ -138,8 +140,8 @@ impl<'a> Ray<'a> {
             let difference = (finer - value).norm();
             value = finer;
             let relative = difference / absolute;
-            if relative <= 1e-9 {
-                let error = absolute * (1e-15 + 10.0 * relative * relative);
+            let error = absolute * (1e-15 + 10.0 * relative * relative);
+            if relative <= 1e-9 || (relative <= 1e-5 && error <= enough) {
                 return RayValue { value, absolute, error };
             }
             if panels > MAX_NODES {
@@ -149,18 +151,20 @@ impl<'a> Ray<'a> {
     }
 
     /// The transform on the imaginary axis, s = i·frequency with frequency > 0: ∫ f(from ± y) e^{−i·frequency·y} dy,
-    /// the ray turned by the angle that gives the smallest error.
-    pub fn fourier(&self, frequency: f64) -> RayValue {
+    /// the ray turned by the angle that gives the smallest error; an absolute error of `enough` ends the search.
+    pub fn fourier(&self, frequency: f64, enough: f64) -> RayValue {
         let s = Complex64::new(0.0, frequency);
         let full = self.rotation();
-        let mut best = self.transform(s, -full);
+        let mut best = self.transform(s, -full, enough);
         let mut angle = full;
         for _ in 0..4 {
-            if best.absolute <= 3.0 * best.value.norm() && best.error <= 4e-15 * best.value.norm() {
+            if best.error <= enough
+                || best.absolute <= 3.0 * best.value.norm() && best.error <= 4e-15 * best.value.norm()
+            {
                 break;
             }
             angle *= 0.5;
-            let other = self.transform(s, -angle);
+            let other = self.transform(s, -angle, enough);
             if other.error < best.error {
                 best = other;
             } else if other.error > 3.0 * best.error {

@@ -98,10 +98,10 @@ pub(super) fn power(z: Complex64, n: u64) -> Complex64 {
 /// Π (A_i + C_i)^{n_i} minus all terms of total degree ≤ `degree` in C, or minus the `subtracted` ones.
 ///
 /// Where the rest is small against A the exponential series of Σ n_i ln(1 + λC_i/A_i) is used, so that the rest
-/// keeps its relative accuracy.
-pub(super) fn remainder(values: &[TermValue], degree: i64, subtracted: &[Selection]) -> Complex64 {
+/// keeps its relative accuracy; the flag says so.
+pub(super) fn remainder(values: &[TermValue], degree: i64, subtracted: &[Selection]) -> (Complex64, bool) {
     if degree < 0 || subtracted.is_empty() {
-        return values.iter().map(|v| power(v.atoms + v.continuous, v.count)).product();
+        return (values.iter().map(|v| power(v.atoms + v.continuous, v.count)).product(), true);
     }
     let with_atoms = |v: &&TermValue| v.atoms.norm_sqr() > 0.0;
     let share: f64 =
@@ -136,7 +136,7 @@ pub(super) fn remainder(values: &[TermValue], degree: i64, subtracted: &[Selecti
             series[j] = sum / j as f64;
         }
         let first = (degree - forced + 1) as usize;
-        return base * series[first.min(ORDER)..].iter().sum::<Complex64>();
+        return (base * series[first.min(ORDER)..].iter().sum::<Complex64>(), true);
     }
     let whole: Complex64 = values.iter().map(|v| power(v.atoms + v.continuous, v.count)).product();
     let low: Complex64 = subtracted
@@ -150,7 +150,7 @@ pub(super) fn remainder(values: &[TermValue], degree: i64, subtracted: &[Selecti
             s.multiplicity * product
         })
         .sum();
-    whole - low
+    (whole - low, false)
 }
 
 #[cfg(test)]
@@ -178,7 +178,7 @@ mod tests {
                 .into_iter()
                 .map(|(k, m)| Selection { counts: vec![k], degree: k, multiplicity: m, weight: 0.1 })
                 .collect();
-            let found = remainder(&[value], 2, &subtracted);
+            let (found, _) = remainder(&[value], 2, &subtracted);
             let whole = (value.atoms + value.continuous).norm().powi(20);
             assert!(
                 (found - expected).norm() < 1e-12 * expected.norm() + 1e-15 * whole,

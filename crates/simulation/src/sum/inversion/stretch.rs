@@ -100,7 +100,7 @@ impl Stretch {
         let (support_low, support_high) = density.support();
         let low = piece.low.max(support_low);
         let high = piece.high.min(support_high);
-        if !(low < high) {
+        if low.is_nan() || high.is_nan() || low >= high {
             return Vec::new();
         }
         let mut cuts: Vec<f64> =
@@ -296,10 +296,10 @@ impl Stretch {
 
     /// factor·∫₀^∞ f(e ± y) e^{−i t (image(e ± y) − image(e))} dy, for a real point e of the stretch (family units)
     /// and t > 0: the transform of the untruncated rest, seen from e.
-    fn from_point(&self, point: f64, t: f64) -> RayValue {
+    fn seen_from(&self, point: f64, t: f64, enough: f64) -> RayValue {
         let ray = Ray::new(self.density.as_ref(), point, self.near, self.direction);
         let slope = t * self.multiply * self.direction;
-        let mut value = ray.fourier(slope.abs());
+        let mut value = ray.fourier(slope.abs(), enough / self.factor);
         if slope < 0.0 {
             value.value = value.value.conj();
         }
@@ -310,14 +310,14 @@ impl Stretch {
     }
 
     /// The rest seen from the start.
-    pub(super) fn from_start(&self, t: f64) -> RayValue {
-        self.from_point(self.start, t)
+    pub(super) fn seen_from_start(&self, t: f64, enough: f64) -> RayValue {
+        self.seen_from(self.start, t, enough)
     }
 
     /// The rest seen from the end; zero where the stretch is unbounded.
-    pub(super) fn from_end(&self, t: f64) -> RayValue {
+    pub(super) fn seen_from_end(&self, t: f64, enough: f64) -> RayValue {
         if self.end.is_finite() {
-            self.from_point(self.end, t)
+            self.seen_from(self.end, t, enough)
         } else {
             RayValue { value: Complex64::ZERO, absolute: 0.0, error: 0.0 }
         }
@@ -330,8 +330,8 @@ impl Stretch {
         let mut error = 0.0;
         for panel in &self.panels {
             if self.rotates && panel.length * t > 10.0 {
-                let near = self.from_point(panel.inner, t);
-                let far = self.from_end(t);
+                let near = self.seen_from(panel.inner, t, 0.0);
+                let far = self.seen_from_end(t, 0.0);
                 let at_near = Complex64::from_polar(1.0, -t * self.image(panel.inner)) * near.value;
                 let at_far = match self.end() {
                     Some(end) => Complex64::from_polar(1.0, -t * end) * far.value,
@@ -354,7 +354,7 @@ impl Stretch {
             && let Some(last) = self.panels.last()
         {
             let outer = last.inner + self.direction * last.length / self.multiply.abs();
-            let near = self.from_point(outer, t);
+            let near = self.seen_from(outer, t, 0.0);
             let value = Complex64::from_polar(1.0, -t * self.image(outer)) * near.value;
             let mean =
                 last.mean_from_here - last.nodes.iter().zip(&last.weights).map(|(x, w)| x * w).sum::<f64>();

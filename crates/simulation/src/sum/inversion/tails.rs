@@ -21,6 +21,59 @@ pub(super) struct ScaledTerm {
     pub(super) scale: f64,
 }
 
+/// Upper bounds on one tail of a standardized summand, on a ladder.
+#[derive(Debug)]
+struct TailLadder {
+    /// P(±X > rung k).
+    heights: Vec<f64>,
+}
+
+/// Both tails of a standardized summand.
+#[derive(Debug)]
+pub(super) struct Tails {
+    upper: TailLadder,
+    lower: TailLadder,
+}
+
+const FIRST_RUNG: f64 = 1e-3;
+const RUNG_RATIO: f64 = 1.04;
+const MOST_RUNGS: usize = 900;
+
+impl TailLadder {
+    fn new(tail: impl Fn(f64) -> f64) -> Self {
+        let mut heights = Vec::new();
+        let mut y = FIRST_RUNG;
+        while heights.len() < MOST_RUNGS {
+            let height = tail(y);
+            heights.push(height);
+            if height <= 0.0 {
+                break;
+            }
+            y *= RUNG_RATIO;
+        }
+        Self { heights }
+    }
+
+    /// An upper bound on the tail at y > 0: its value at the rung below y.
+    fn beyond(&self, y: f64) -> f64 {
+        if y < FIRST_RUNG {
+            return 1.0;
+        }
+        let k = ((y / FIRST_RUNG).ln() / RUNG_RATIO.ln() - 1e-9).floor() as usize;
+        self.heights[k.min(self.heights.len() - 1)]
+    }
+}
+
+impl Tails {
+    /// Evaluates both ladders.
+    pub(super) fn new(law: &Law, mean: f64, sd: f64) -> Self {
+        Self {
+            upper: TailLadder::new(|y| above(law, mean + y * sd)),
+            lower: TailLadder::new(|y| below(law, mean - y * sd)),
+        }
+    }
+}
+
 /// P(X > x) for an unstandardized law, computed from its parts so that small values keep their accuracy.
 pub(super) fn above(law: &Law, x: f64) -> f64 {
     let atoms: f64 = law.atoms.iter().rev().take_while(|a| a.value > x).map(|a| a.mass).sum();
@@ -53,7 +106,7 @@ pub(super) fn below(law: &Law, x: f64) -> f64 {
 
 /// factor·P(low < Y ≤ high) for the family of a piece, from whichever tail is smaller.
 pub(super) fn interval_mass(piece: &crate::law::Piece, low: f64, high: f64) -> f64 {
-    if !(low < high) {
+    if low.is_nan() || high.is_nan() || low >= high {
         return 0.0;
     }
     let density = piece.density.as_ref();
@@ -79,13 +132,9 @@ pub(super) fn survival(density: &dyn Density, x: f64) -> f64 {
 impl ScaledTerm {
     /// P(scale·X > y) for one copy (`upper`), or P(scale·X < −y).
     fn one_beyond(&self, y: f64, upper: bool) -> f64 {
-        let standard = self.summand.standard;
-        let x = y / self.scale.abs() * standard.sd;
-        if upper == (self.scale > 0.0) {
-            above(&self.summand.law, standard.mean + x)
-        } else {
-            below(&self.summand.law, standard.mean - x)
-        }
+        let tails = self.summand.tails();
+        let tail = if upper == (self.scale > 0.0) { &tails.upper } else { &tails.lower };
+        tail.beyond(y / self.scale.abs())
     }
 
     /// Largest value of the term (`upper`), or largest value of its negative.
