@@ -100,7 +100,8 @@ fn random_scenarios_hold_no_surprises() {
         };
         let start = Instant::now();
         let work = Work::new();
-        let outcome = std::panic::catch_unwind(|| within(LIMIT, &work, || assess(&scenario, Effort::PLANNED_N, &work)));
+        let outcome =
+            std::panic::catch_unwind(|| within(LIMIT, &work, || assess(&scenario, Effort::PLANNED_N, &work)));
         let taken = start.elapsed();
         if taken > LIMIT / 10 {
             println!("{taken:?}: {text}");

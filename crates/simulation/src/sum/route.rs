@@ -86,9 +86,7 @@ fn continuous_summands(spec: &SumSpec) -> f64 {
 fn invert(spec: &SumSpec, method: &Method, work: &Work) -> Built {
     let few = continuous_summands(spec) <= FEW_SUMMANDS;
     let contour = || boxed(ContourSum::build(spec, method, work));
-    if few
-        && let decided @ (Ok(_) | Err(SumError::Cancelled(_) | SumError::NoVariance)) = contour()
-    {
+    if few && let decided @ (Ok(_) | Err(SumError::Cancelled(_) | SumError::NoVariance)) = contour() {
         return decided;
     }
     // The transform takes every law, so its reason is the one that tells something.
