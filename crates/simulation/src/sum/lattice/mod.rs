@@ -3,7 +3,9 @@
 mod commensurable;
 mod convolution;
 mod harmonics;
+mod plans;
 mod power;
+mod shared;
 mod summand;
 mod tail;
 
@@ -16,8 +18,8 @@ use harmonics::{Harmonics, Sums, band};
 use summand::{Part, center, range, window};
 use tail::{SERIES_FROM, Tail};
 
-/// Longest transform: two tables and two buffers of this length stay below 150 MB.
-const LONGEST: usize = 1 << 22;
+/// Longest transform: its plan, buffers and tables stay below 100 MB.
+const LONGEST: usize = 1 << 20;
 
 /// Sums over at most this many values are convolved directly.
 const DIRECT: f64 = 1024.0;
@@ -98,7 +100,8 @@ impl LatticeSum {
     pub fn build(spec: &SumSpec, _method: &Method, work: &Work) -> Result<Self, SumError> {
         work.check()?;
         let common = common_lattice(spec).map_err(unavailable)?;
-        let parts = common.parts;
+        let mut parts = common.parts;
+        shared::remember(&mut parts);
         let n: u64 = spec.terms.iter().map(|term| term.count).sum();
         let (mut variance, mut third, mut fourth, mut deviation) = (0.0, 0.0, 0.0, 0.0);
         for part in &parts {
@@ -156,7 +159,9 @@ impl LatticeSum {
             let outside = 2.0 * (-OUTSIDE).exp();
             let narrow = if last - first >= SERIES_FROM { band(&parts, sd) } else { None };
             let (bulk, absolute, how) = if let Some(narrow) = narrow {
-                let series = Harmonics::new(&parts, first, last - first + 1, outside, narrow, Sums::Running);
+                // A cycle that many n have in common.
+                let period = ((last - first + 1) as u64).next_power_of_two() as i64;
+                let series = Harmonics::new(&parts, first, period, outside, narrow, Sums::Running);
                 let absolute = series.error;
                 (Bulk::Series(series), absolute, "Fourier series of a narrow band".to_owned())
             } else if size > LONGEST as f64 {
