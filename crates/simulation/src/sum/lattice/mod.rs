@@ -5,6 +5,7 @@ mod convolution;
 mod harmonics;
 mod plans;
 mod power;
+mod rounded;
 mod shared;
 mod summand;
 mod tail;
@@ -13,8 +14,9 @@ use super::steps::{Cumulative, CumulativeTable, Scale, Steps};
 use super::{Distance, Method, Route, StandardizedSum, SumError, SumMoments, SumSpec};
 use crate::figure::Figure;
 use crate::work::Work;
-use commensurable::common_lattice;
+use commensurable::{CommonLattice, common_lattice};
 use harmonics::{Harmonics, Sums, band};
+pub use rounded::RoundedSum;
 use summand::{Part, center, range, window};
 use tail::{SERIES_FROM, Tail};
 
@@ -99,10 +101,14 @@ impl LatticeSum {
     /// Builds the distribution, or says why the sum is not one for this route.
     pub fn build(spec: &SumSpec, _method: &Method, work: &Work) -> Result<Self, SumError> {
         work.check()?;
-        let common = common_lattice(spec).map_err(unavailable)?;
+        let n: u64 = spec.terms.iter().map(|term| term.count).sum();
+        Self::of_common(common_lattice(spec).map_err(unavailable)?, n, work)
+    }
+
+    /// Builds the distribution of a sum given in lattice units.
+    fn of_common(common: CommonLattice, n: u64, work: &Work) -> Result<Self, SumError> {
         let mut parts = common.parts;
         shared::remember(&mut parts);
-        let n: u64 = spec.terms.iter().map(|term| term.count).sum();
         let (mut variance, mut third, mut fourth, mut deviation) = (0.0, 0.0, 0.0, 0.0);
         for part in &parts {
             let (two, three, four) = part.central_moments();

@@ -191,7 +191,8 @@ pub(crate) fn window(parts: &[Part], exponent: f64, sd: f64) -> (i64, i64) {
         least
     };
     // The whole support is cheaper than a search where it is narrow.
-    let low = if center - least < 4.0 * sd { least } else { (center - reach(false) - 2.0).floor().max(least) };
+    let low =
+        if center - least < 4.0 * sd { least } else { (center - reach(false) - 2.0).floor().max(least) };
     let high = if most - center < 4.0 * sd { most } else { (center + reach(true) + 2.0).ceil().min(most) };
     (low as i64, high as i64)
 }
