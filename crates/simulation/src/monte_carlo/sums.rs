@@ -24,7 +24,7 @@ use crate::work::Work;
 use std::sync::Arc;
 
 /// Simulations stop after about so many elementary draws, whatever `method.draws` says: half a minute.
-pub const SUMMAND_CAP: f64 = 4e9;
+pub const SUMMAND_CAP: f64 = 1e9;
 /// Fewer sums than this say nothing worth stating; a plan that cannot have them is refused.
 pub const FEWEST_SUMS: u64 = 400;
 /// Elementary draws per block, about.

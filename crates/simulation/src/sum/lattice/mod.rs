@@ -97,6 +97,9 @@ fn unavailable(reason: impl Into<String>) -> SumError {
     SumError::NotAvailable { route: Route::Lattice, reason: reason.into() }
 }
 
+/// Most values times frequencies spent on one Fourier series.
+const MOST_TERMS: f64 = 1e8;
+
 impl LatticeSum {
     /// Builds the distribution, or says why the sum is not one for this route.
     pub fn build(spec: &SumSpec, _method: &Method, work: &Work) -> Result<Self, SumError> {
@@ -167,6 +170,13 @@ impl LatticeSum {
             let (bulk, absolute, how) = if let Some(narrow) = narrow {
                 // A cycle that many n have in common.
                 let period = ((last - first + 1) as u64).next_power_of_two() as i64;
+                let frequencies = narrow * period as f64 / std::f64::consts::TAU;
+                let values: usize = parts.iter().map(|part| part.masses.len()).sum();
+                if frequencies * values as f64 > MOST_TERMS {
+                    return Err(unavailable(format!(
+                        "its tails are so heavy that {frequencies:.0} frequencies of {values} values each would be needed"
+                    )));
+                }
                 let series = Harmonics::new(&parts, first, period, outside, narrow, Sums::Running);
                 let absolute = series.error;
                 (Bulk::Series(series), absolute, "Fourier series of a narrow band".to_owned())
