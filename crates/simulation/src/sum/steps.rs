@@ -14,6 +14,14 @@ pub(crate) trait Cumulative: Send + Sync + std::fmt::Debug {
     fn at_or_below(&self, k: i64) -> Figure;
     /// P(K ≥ k).
     fn at_or_above(&self, k: i64) -> Figure;
+    /// P(K ≤ k) where absolute accuracy is enough: no dearer tail is worked out for it.
+    fn absolutely_at_or_below(&self, k: i64) -> Figure {
+        self.at_or_below(k)
+    }
+    /// P(K ≥ k) likewise.
+    fn absolutely_at_or_above(&self, k: i64) -> Figure {
+        self.at_or_above(k)
+    }
     /// Smallest and largest index the quantity may take.
     fn range(&self) -> (i64, i64);
     /// Whether the probabilities at neighbouring indices lie on one curve that is smooth over many of them.
@@ -137,6 +145,18 @@ impl<C: Cumulative> Steps<C> {
         }
     }
 
+    /// P(K ≤ k) for a gap to Φ, which needs absolute accuracy only.
+    fn lower_for_gap(&self, k: i64) -> Figure {
+        let (first, last) = self.cumulative.range();
+        if k < first || k >= last { self.below_index(k) } else { self.cumulative.absolutely_at_or_below(k) }
+    }
+
+    /// P(K ≥ k) likewise.
+    fn upper_for_gap(&self, k: i64) -> Figure {
+        let (first, last) = self.cumulative.range();
+        if k <= first || k > last { self.above_index(k) } else { self.cumulative.absolutely_at_or_above(k) }
+    }
+
     /// Scans outwards from the centre. At index k the candidates are |F(k) − Φ(z)| and |F(k−1) − Φ(z)|; once the
     /// tail of F and that of Φ are both below the best difference found, nothing further out can beat it,
     /// because a difference of two tail probabilities is at most the larger of them.
@@ -159,9 +179,9 @@ impl<C: Cumulative> Steps<C> {
     fn consider(&self, k: i64, best: &mut Candidate) {
         let z = self.scale.z(k);
         if z <= 0.0 {
-            best.consider_both(k, self.below_index(k), self.below_index(k - 1), normal::at_or_below(z));
+            best.consider_both(k, self.lower_for_gap(k), self.lower_for_gap(k - 1), normal::at_or_below(z));
         } else {
-            best.consider_both(k, self.above_index(k + 1), self.above_index(k), normal::above(z));
+            best.consider_both(k, self.upper_for_gap(k + 1), self.upper_for_gap(k), normal::above(z));
         }
     }
 
@@ -177,10 +197,10 @@ impl<C: Cumulative> Steps<C> {
         let gap = |k: i64, side: Side| {
             let z = self.scale.z(k);
             let (figure, normal) = match (z <= 0.0, side) {
-                (true, Side::At) => (self.below_index(k), normal::at_or_below(z)),
-                (true, Side::JustBelow) => (self.below_index(k - 1), normal::at_or_below(z)),
-                (false, Side::At) => (self.above_index(k + 1), normal::above(z)),
-                (false, Side::JustBelow) => (self.above_index(k), normal::above(z)),
+                (true, Side::At) => (self.lower_for_gap(k), normal::at_or_below(z)),
+                (true, Side::JustBelow) => (self.lower_for_gap(k - 1), normal::at_or_below(z)),
+                (false, Side::At) => (self.upper_for_gap(k + 1), normal::above(z)),
+                (false, Side::JustBelow) => (self.upper_for_gap(k), normal::above(z)),
             };
             (figure.value - normal).abs()
         };
@@ -228,8 +248,8 @@ impl<C: Cumulative> Steps<C> {
         let mut k = start;
         loop {
             let z = self.scale.z(k);
-            let lower = self.below_index(k);
-            let below = self.below_index(k - 1);
+            let lower = self.lower_for_gap(k);
+            let below = self.lower_for_gap(k - 1);
             best.consider_both(k, lower, below, normal::at_or_below(z));
             if k <= first || lower.value.max(normal::at_or_below(z)) < best.gap {
                 break;
@@ -240,8 +260,8 @@ impl<C: Cumulative> Steps<C> {
         while k <= last {
             let z = self.scale.z(k);
             // In upper-tail terms: F(k) − Φ = normal above − P(K ≥ k+1).
-            let above = self.above_index(k + 1);
-            let at_or_above = self.above_index(k);
+            let above = self.upper_for_gap(k + 1);
+            let at_or_above = self.upper_for_gap(k);
             let normal_above = normal::above(z);
             best.consider_both(k, above, at_or_above, normal_above);
             if at_or_above.value.max(normal_above) < best.gap {

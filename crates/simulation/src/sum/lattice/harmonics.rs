@@ -90,6 +90,9 @@ pub(crate) struct Harmonics {
     coefficients: Vec<Complex64>,
     /// Its constant part: per index for running sums, as it is for damped ones.
     constant: f64,
+    /// For running sums, what starts them at the beginning of the cycle: with w = e^(i·turn),
+    /// Σ_{0 ≤ l ≤ m} w^l = (w^m − w^−1)/(1 − w^−1), and this is the share of all w^−1.
+    start: f64,
     /// Bound on the error of every sum.
     pub error: f64,
 }
@@ -138,12 +141,19 @@ impl Harmonics {
             error += coefficient.norm() * U * (2.0 * units + 4.0 * j as f64 + 24.0);
             coefficients.push(coefficient);
         }
+        let start = match sums {
+            Sums::Running => {
+                let back = |j: usize| Complex64::from_polar(1.0, -TAU * j as f64 / length);
+                -coefficients.iter().enumerate().map(|(j, value)| (value * back(j + 1)).re).sum::<f64>()
+            }
+            Sums::DampedUp { .. } | Sums::DampedDown { .. } => 0.0,
+        };
         let constant = match sums {
             Sums::Running => 1.0 / length,
             Sums::DampedUp { rate } | Sums::DampedDown { rate } => -1.0 / (length * libm::expm1(-rate)),
         };
         error += 2.0 * outside + 1e-19 * (1.0 + length.ln()) + 16.0 * U * constant;
-        Self { first, period, coefficients, constant, error }
+        Self { first, period, coefficients, constant, start, error }
     }
 
     /// The sum asked for at the index k, which must lie in the cycle.
@@ -152,14 +162,11 @@ impl Harmonics {
         let turn = Complex64::from_polar(1.0, TAU * offset as f64 / self.period as f64);
         match sums {
             Sums::Running => {
-                // Σ_{l ≤ m} w^l = (w^m − w^−1)/(1 − w^−1): the sum from the start of the cycle.
-                let back = Complex64::from_polar(1.0, -TAU / self.period as f64);
-                let (mut here, mut start) = (turn, back);
-                let mut sum = 0.0;
+                let mut here = turn;
+                let mut sum = self.start;
                 for coefficient in &self.coefficients {
-                    sum += (coefficient * (here - start)).re;
+                    sum += coefficient.re * here.re - coefficient.im * here.im;
                     here *= turn;
-                    start *= back;
                 }
                 self.constant * (offset + 1) as f64 + sum
             }
@@ -167,7 +174,7 @@ impl Harmonics {
                 let mut here = turn;
                 let mut sum = 0.0;
                 for coefficient in &self.coefficients {
-                    sum += (coefficient * here).re;
+                    sum += coefficient.re * here.re - coefficient.im * here.im;
                     here *= turn;
                 }
                 self.constant + sum

@@ -240,6 +240,14 @@ impl Cumulative for Transformed {
         }
     }
 
+    fn absolutely_at_or_below(&self, k: i64) -> Figure {
+        self.plain(self.bulk.at_or_below(k))
+    }
+
+    fn absolutely_at_or_above(&self, k: i64) -> Figure {
+        self.plain(self.bulk.at_or_above(k))
+    }
+
     fn range(&self) -> (i64, i64) {
         self.range
     }
