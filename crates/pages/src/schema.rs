@@ -25,7 +25,8 @@ pub fn scenario_schema() -> Value {
     let generator = SchemaSettings::draft2020_12().into_generator();
     let mut schema = generator.into_root_schema_for::<Scenario>().to_value();
     schema["title"] = json!("Gaussgap scenario");
-    schema["description"] = json!("A planned sum or mean, and what the normal approximation is to be used for.");
+    schema["description"] =
+        json!("A planned sum or mean, and what the normal approximation is to be used for.");
     schema["required"] = json!(["format"]);
     schema["unevaluatedProperties"] = json!(false);
     if let Some(sources) = schema.as_object_mut().and_then(|object| object.remove("anyOf")) {
@@ -39,7 +40,10 @@ pub fn scenario_schema() -> Value {
     let unit = json!({"type": "number", "exclusiveMinimum": 0, "exclusiveMaximum": 1});
     let properties = [
         ("format", json!({"const": SCENARIO_FORMAT})),
-        ("probe_z", json!({"type": "array", "items": {"type": "number"}, "maxItems": 1000, "default": [-4, -3, -2, -1, 0, 1, 2, 3, 4]})),
+        (
+            "probe_z",
+            json!({"type": "array", "items": {"type": "number"}, "maxItems": 1000, "default": [-4, -3, -2, -1, 0, 1, 2, 3, 4]}),
+        ),
         ("statistic", json!({"$ref": "#/$defs/Statistic", "default": "mean"})),
         ("claim", json!({"$ref": "#/$defs/Claim", "default": {"kind": "curve"}})),
         ("tolerance", json!({"$ref": "#/$defs/Tolerance", "default": {"absolute": 0.01}})),
@@ -53,7 +57,9 @@ pub fn scenario_schema() -> Value {
             property.insert("minimum".to_owned(), json!(1));
             property.insert("maximum".to_owned(), json!(LARGEST_N));
         }
-        "level" | "significance" | "probability" => property.extend(unit.as_object().cloned().unwrap_or_default()),
+        "level" | "significance" | "probability" => {
+            property.extend(unit.as_object().cloned().unwrap_or_default())
+        }
         "absolute" | "relative" | "epsilon" if property["type"] == "number" => {
             property.insert("exclusiveMinimum".to_owned(), json!(0));
         }
@@ -146,7 +152,8 @@ mod tests {
     #[ignore = "writes files for people to look at"]
     fn look() {
         let folder = std::env::temp_dir();
-        std::fs::write(folder.join("gaussgap-scenario.schema.json"), format!("{:#}", scenario_schema())).unwrap();
+        std::fs::write(folder.join("gaussgap-scenario.schema.json"), format!("{:#}", scenario_schema()))
+            .unwrap();
         std::fs::write(folder.join("gaussgap-report.schema.json"), format!("{:#}", report_schema())).unwrap();
     }
 }

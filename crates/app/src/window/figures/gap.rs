@@ -57,9 +57,7 @@ pub fn readout(view: &View<'_>) -> String {
         return format!("{}: actual − normal = {gap}", view.place(z));
     }
     let ends = extent([view.shown.gap.as_slice()], 1);
-    ends.map_or_else(String::new, |(low, high)| {
-        format!("between {} and {}", shown(low, 3), shown(high, 3))
-    })
+    ends.map_or_else(String::new, |(low, high)| format!("between {} and {}", shown(low, 3), shown(high, 3)))
 }
 
 /// The figure as a table.

@@ -133,7 +133,7 @@ impl Figure {
             },
             Self::Remedies => "at the planned n",
             Self::Rules => "do they agree?",
-            Self::Cautions => "what the numbers do not say",
+            Self::Cautions => "not in the numbers",
         }
     }
 

@@ -1,8 +1,8 @@
 //! The plan sentence across the top: its underlined words are controls, its grammar follows the claim.
 
 use super::Asks;
-use crate::window::command::Command;
 use super::fields::{self, Field, Fields};
+use crate::window::command::Command;
 use crate::window::model::edit::{Edit, LARGEST_N};
 use crate::window::model::law_kinds::round_to;
 use crate::window::model::prepared::OwnUnits;
@@ -40,7 +40,13 @@ pub struct Surroundings<'a> {
 }
 
 /// Draws the sentence.
-pub fn show(ui: &mut Ui, fields: &mut Fields, scenario: &Scenario, around: Surroundings<'_>, asks: &mut Asks) {
+pub fn show(
+    ui: &mut Ui,
+    fields: &mut Fields,
+    scenario: &Scenario,
+    around: Surroundings<'_>,
+    asks: &mut Asks,
+) {
     let Surroundings { near, problems, playing } = around;
     ui.spacing_mut().item_spacing.y = 4.0;
     let before = fields.problems.len();

@@ -2,6 +2,7 @@
 
 mod data;
 mod parameters;
+mod rows;
 mod source;
 
 use super::fields::{self, Field, Fields};

@@ -17,6 +17,7 @@ impl Cards<'_> {
         let mut copy = law.clone();
         let list: Vec<(&'static str, Value, Style)> = law_parameters::parameters(&mut copy)
             .into_iter()
+            .filter(|_| !matches!(law, LawSpec::Table { .. } | LawSpec::Histogram { .. }))
             .map(|(name, parameter)| {
                 let (value, style) = parameter.read();
                 (name, value, style)
@@ -34,6 +35,7 @@ impl Cards<'_> {
             LawSpec::Data { values, path, column, .. } => {
                 self.data(ui, place, law, values.as_deref(), path.as_deref(), column.as_deref());
             }
+            LawSpec::Table { .. } | LawSpec::Histogram { .. } => self.rows(ui, place, law),
             LawSpec::Lognormal { .. } => self.lognormal_switch(ui, place, law),
             _ => {}
         }
@@ -97,7 +99,13 @@ impl Cards<'_> {
         typed
     }
 
-    pub(super) fn typed(&mut self, ui: &mut Ui, spec: &Field<'_>, value: &Value, style: Style) -> Option<Value> {
+    pub(super) fn typed(
+        &mut self,
+        ui: &mut Ui,
+        spec: &Field<'_>,
+        value: &Value,
+        style: Style,
+    ) -> Option<Value> {
         let list =
             |values: &Vec<f64>| values.iter().map(|v| numbers::plain(*v)).collect::<Vec<_>>().join(", ");
         match (value, style) {

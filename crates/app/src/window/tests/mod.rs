@@ -1,5 +1,8 @@
 //! Tests of the window through its accessibility tree, with the real engine.
 
+mod features;
+mod random;
+
 use super::Workbench;
 use super::model::edit::planned_n;
 use super::model::examples;
