@@ -15,8 +15,8 @@ Methods, by law (stated per case in the output):
   talbot      inverse Laplace transform by the fixed Talbot contour (Abate and Valko 2004) with M nodes at M + 40
               digits; M = 50 and 66 agree to 20 digits at three points of each case, or the script stops.
   line        inverse Laplace transform on a vertical line by the trapezoid rule (Abate and Whitt 1992); the
-              discretisation error is below e^-60 (1e-22 in that case) for a sum that cannot be negative; truncated where the
-              transform leaves less than 1e-32 (1e-25 for one slowly decaying case).
+              discretisation error is below e^-60 (1e-20 in that case) for a sum that cannot be negative; truncated where the
+              transform leaves less than 1e-32 (1e-22 for one slowly decaying case).
 The Kolmogorov distance is located on a grid of steps 0.02 in z (and at every jump), and refined by parabolas at
 full precision until it moves by less than 1e-20.
 """
@@ -91,6 +91,7 @@ def continuous_distance(cdf, special=(), low=-6, high=6, coarse=None, step=mpf("
             if gap > best[0]:
                 best = (gap, z)
     kinks = sorted([mpf(low)] + [z for z, _, _ in special if low < z < high] + [mpf(high)])
+    peaks = []
     for left, right in zip(kinks, kinks[1:]):
         if right - left < mpf(10) ** -15:
             continue
@@ -103,11 +104,16 @@ def continuous_distance(cdf, special=(), low=-6, high=6, coarse=None, step=mpf("
         count = len(zs) - 1
         gaps = [abs(coarse(z) - phi(z)) for z in zs]
         for i in range(1, count):
-            if gaps[i] >= gaps[i - 1] and gaps[i] >= gaps[i + 1] and gaps[i] > best[0] - mpf("1e-4"):
-                sign = 1 if coarse(zs[i]) > phi(zs[i]) else -1
-                value, z = refine(lambda z: sign * (cdf(z) - phi(z)), zs[i - 1], zs[i], zs[i + 1])
-                if value > best[0]:
-                    best = (value, z)
+            if gaps[i] >= gaps[i - 1] and gaps[i] >= gaps[i + 1]:
+                peaks.append((gaps[i], zs[i - 1 : i + 2]))
+    highest = max([best[0]] + [gap for gap, _ in peaks])
+    for gap, (a, b, c) in peaks:
+        # A peak between grid points stands less than this above them.
+        if gap > highest - mpf("1e-4") and (gap > best[0] - mpf("1e-4") or best[0] < 0):
+            sign = 1 if coarse(b) > phi(b) else -1
+            value, z = refine(lambda z: sign * (cdf(z) - phi(z)), a, b, c)
+            if value > best[0]:
+                best = (value, z)
     return best
 
 
@@ -203,11 +209,11 @@ def line_inverse(transform, x_most, a=60, mass=mpf(1), most_nodes=6000):
 
     transform(s) is that of the whole sum (its atoms at single points taken out by the caller, who gives the `mass`
     left). The discretisation adds sum_k e^(-ka) P(S <= x + kT); with P taken as `mass` and subtracted, what is
-    left of it is below e^(-a) P(S > T): under 1e-22 where a smaller a than 60 is given.
+    left of it is below e^(-a) P(S > T): under 1e-20 where a smaller a than 60 is given.
     """
     period = x_most * mpf("1.01")
     c, h = a / period, 2 * pi / period
-    limit = mpf(10) ** (-32 if a == 60 else -25)
+    limit = mpf(10) ** (-32 if a == 60 else -22)
     nodes = []
     quiet = 0
     for k in range(most_nodes):
@@ -435,7 +441,7 @@ def weibull(shape, n):
 
 # Lognormal with log-mean 0: L(s) = ∫ phi(y) exp(-s e^(sigma y)) dy along y = real − i·theta/sigma, theta = arg s.
 class Lognormal:
-    def __init__(self, sigma, step=mpf("0.17"), reach=12):
+    def __init__(self, sigma, step=mpf("0.17"), reach=14):
         self.sigma = mpf(sigma)
         self.step = step
         self.ys = [step * i for i in range(-int(reach / step), int(reach / step) + 1)]
@@ -523,7 +529,7 @@ def lognormal(sigma, n, zero=mpf(0), cap=None):
                 one += keep * exp(-cap * s) * beyond(s)
             return one**n - cache_power
         # The lognormal's own transform decays slowly where zeros are many: fewer digits there.
-        inner = line_inverse(transform, total_mean + 6 * sd, a=36 if zero and n == 40 else 60,
+        inner = line_inverse(transform, total_mean + 6 * sd, a=28 if zero and n == 40 else 60,
                              mass=1 - cache_power, most_nodes=30000)
 
         def cdf(x):

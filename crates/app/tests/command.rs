@@ -122,7 +122,7 @@ fn bad_input_is_named_with_file_and_place_and_nothing_is_written() {
         ("none.json", "none.json: cannot be read: "),
         ("syntax.json", "syntax.json: line 2, column 13: "),
         ("typo.json", "typo.json: /tolerence: "),
-        ("weight.json", "weight.json: /n: must be"),
+        ("weight.json", "weight.json: /n: must lie between 1 and"),
         ("weight.json", "weight.json: /law"),
         ("no*such.json", "no*such.json: matches no file"),
     ];

@@ -23,7 +23,10 @@ pub fn summary(path: &Path, report: &Report) -> String {
         );
         lines.push(match report.verdict.safe_from {
             Some(n) => format!("  Safe from n = {} ({range}).", numbers::whole(n)),
-            None => format!("  Not safe from any n up to {} ({range}).", numbers::whole(checked.to)),
+            None => format!(
+                "  Not safe from any n up to {0}: the claim still fails at {0}.",
+                numbers::whole(checked.to)
+            ),
         });
     }
     if let Some(distance) = report.distance.kolmogorov {

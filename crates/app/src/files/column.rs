@@ -5,6 +5,7 @@
 //! is a header. Blank or non-numeric cells are never skipped: each is an error that names line, column, what was
 //! found and what was expected. Rows are streamed; only the column is kept.
 
+use super::records::Records;
 use std::fmt;
 use std::fs::File;
 use std::io::{self, BufRead, BufReader, Read};
@@ -86,41 +87,36 @@ pub fn read_column_from(
 ) -> Result<Vec<f64>, ColumnError> {
     let unreadable = |source| ColumnError::Unreadable { path: path.to_owned(), source };
     let no_column = |reason| ColumnError::NoColumn { path: path.to_owned(), reason };
-    let mut source = BufReader::with_capacity(1 << 16, source);
-    let start = source.fill_buf().map_err(unreadable)?;
-    let mark = if start.starts_with(b"\xef\xbb\xbf") { 3 } else { 0 };
-    let delimiter = delimiter(&start[mark..]);
-    source.consume(mark);
-    let mut reader =
-        csv::ReaderBuilder::new().delimiter(delimiter).has_headers(false).flexible(true).from_reader(source);
-
-    let mut record = csv::ByteRecord::new();
-    if !next(&mut reader, &mut record).map_err(unreadable)? {
+    let (mut records, delimiter) = records(source).map_err(unreadable)?;
+    // Blank lines before the first record hold nothing.
+    while records.advance().map_err(unreadable)? && records.is_blank() {}
+    let first = records.cells();
+    if records.is_blank() {
         return Err(no_column("is empty, expected rows of numbers".to_owned()));
     }
-    let columns = record.len();
-    let (index, header) = find_column(&record, column, delimiter).map_err(no_column)?;
-    let label = match (&header, column) {
-        (Some(name), _) if !name.is_empty() => format!("\"{name}\""),
+    let (index, header) = find_column(&first, column, delimiter).map_err(no_column)?;
+    let label = match &header {
+        Some(name) if !name.is_empty() => format!("\"{name}\""),
         _ => (index + 1).to_string(),
     };
 
     let mut cells = Cells { delimiter, label, values: Vec::new(), listed: Vec::new(), more: 0 };
-    let mut line = 1;
     if header.is_none() {
-        cells.take(line, record.get(index));
+        cells.take(records.line(), first.get(index).map(Vec::as_slice));
     }
-    let mut next_line = line + line_breaks(&record);
-    while next(&mut reader, &mut record).map_err(unreadable)? {
-        line = record.position().map_or(next_line, csv::Position::line);
-        if columns == 1 {
-            // The CSV reader passes over empty lines; in a file with one column they are blank cells.
-            for blank in next_line..line {
-                cells.take(blank, Some(b""));
+    let mut blank_lines = Vec::new();
+    while records.advance().map_err(unreadable)? {
+        if records.is_blank() {
+            // In a file with one column a blank line is a blank cell, unless nothing follows it.
+            if first.len() == 1 {
+                blank_lines.push(records.line());
             }
+            continue;
         }
-        cells.take(line, record.get(index));
-        next_line = line + line_breaks(&record);
+        for line in blank_lines.drain(..) {
+            cells.take(line, Some(b""));
+        }
+        cells.take(records.line(), records.cell(index).as_deref());
     }
     if cells.listed.is_empty() {
         Ok(cells.values)
@@ -132,17 +128,21 @@ pub fn read_column_from(
 /// The names in the first line of a CSV file, or `None` if its first line holds numbers only.
 pub fn header_names(path: &Path) -> Result<Option<Vec<String>>, ColumnError> {
     let unreadable = |source| ColumnError::Unreadable { path: path.to_owned(), source };
-    let mut source = BufReader::with_capacity(1 << 16, File::open(path).map_err(unreadable)?);
-    let start = source.fill_buf().map_err(unreadable)?;
+    let (mut records, delimiter) = records(File::open(path).map_err(unreadable)?).map_err(unreadable)?;
+    while records.advance().map_err(unreadable)? && records.is_blank() {}
+    let cells = records.cells();
+    let numbers_only = cells.iter().all(|cell| number(cell, delimiter).is_some());
+    Ok((!numbers_only).then(|| cells.iter().map(|cell| text(cell)).collect()))
+}
+
+/// The records after a byte order mark, if there is one, and the delimiter between their cells.
+fn records<R: Read>(source: R) -> io::Result<(Records<BufReader<R>>, u8)> {
+    let mut source = BufReader::with_capacity(1 << 16, source);
+    let start = source.fill_buf()?;
     let mark = if start.starts_with(b"\xef\xbb\xbf") { 3 } else { 0 };
     let delimiter = delimiter(&start[mark..]);
     source.consume(mark);
-    let mut reader =
-        csv::ReaderBuilder::new().delimiter(delimiter).has_headers(false).flexible(true).from_reader(source);
-    let mut record = csv::ByteRecord::new();
-    next(&mut reader, &mut record).map_err(unreadable)?;
-    let numbers_only = record.iter().all(|cell| number(cell, delimiter).is_some());
-    Ok((!numbers_only).then(|| record.iter().map(text).collect()))
+    Ok((Records::new(source, delimiter), delimiter))
 }
 
 /// The numbers and the bad cells met so far.
@@ -173,18 +173,13 @@ impl Cells {
     }
 }
 
-/// The next record; false at the end.
-fn next(reader: &mut csv::Reader<impl Read>, record: &mut csv::ByteRecord) -> io::Result<bool> {
-    reader.read_byte_record(record).map_err(io::Error::other)
-}
-
 /// Which column is meant, and its header if the first line is one.
 fn find_column(
-    first: &csv::ByteRecord,
+    first: &[Vec<u8>],
     column: Option<&str>,
     delimiter: u8,
 ) -> Result<(usize, Option<String>), String> {
-    let names: Vec<String> = first.iter().map(text).collect();
+    let names: Vec<String> = first.iter().map(|cell| text(cell)).collect();
     let is_number = |index: usize| first.get(index).is_some_and(|cell| number(cell, delimiter).is_some());
     let listed = || {
         let shown: Vec<String> =
@@ -279,11 +274,6 @@ fn shortened(cell: &str) -> String {
     short
 }
 
-/// Lines a record spans.
-fn line_breaks(record: &csv::ByteRecord) -> u64 {
-    1 + record.iter().flatten().filter(|&&byte| byte == b'\n').count() as u64
-}
-
 #[cfg(test)]
 mod tests {
     use super::*;
@@ -325,6 +315,8 @@ mod tests {
         let error = read("delay\n1\n\n2\n", None).unwrap_err();
         assert_eq!(error, "pilot.csv: line 3, column \"delay\": found a blank cell, expected a number");
         assert_eq!(read("delay\n1\n2\n\n\n", None).unwrap(), [1.0, 2.0]);
+        let error = read("\r\nday,delay\r\n\r\n1,2\r\n3,x\r\n", Some("delay")).unwrap_err();
+        assert_eq!(error, "pilot.csv: line 5, column \"delay\": found \"x\", expected a number");
     }
 
     #[test]

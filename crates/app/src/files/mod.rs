@@ -2,5 +2,6 @@
 
 pub mod column;
 pub mod duplicates;
+mod records;
 pub mod scenario;
 pub mod write;

@@ -6,6 +6,7 @@ use super::table::{Column, HEADING_ROOM, Table, heading};
 use super::text::{Font, wrapped};
 use crate::numbers::{error_only, figure_in, number, optional, whole};
 use gaussgap_conclusions::report::{Guarantee, Remedy, Report, RuleOfThumb, Summand, TailRow};
+use gaussgap_simulation::figure::Figure;
 
 const BODY: Font = Font::regular(13.0);
 
@@ -47,15 +48,30 @@ fn tail_row(row: &TailRow) -> Vec<String> {
     let lower = row.z < 0.0;
     let (actual, normal) =
         if lower { (row.at_or_below, row.normal_at_or_below) } else { (row.above, row.normal_above) };
-    let ratio = actual.filter(|_| normal > 0.0).map(|actual| actual.value / normal);
+    let ratio = actual.filter(|_| normal > 0.0).map(|actual| Figure {
+        value: actual.value / normal,
+        error: actual.error / normal,
+        basis: actual.basis,
+    });
     vec![
         number(row.z, 4),
         if lower { "Z ≤ z" } else { "Z > z" }.to_owned(),
-        optional(actual.map(|actual| actual.value), 5),
+        within_error(actual, 5),
         actual.map_or_else(|| "–".to_owned(), |actual| error_only(actual.error)),
         number(normal, 5),
-        optional(ratio, 4),
+        within_error(ratio, 4),
     ]
+}
+
+/// A positive number with no more digits than its error leaves right (at most `most`); where the error is as large
+/// as the number, only its upper limit.
+fn within_error(figure: Option<Figure>, most: usize) -> String {
+    let Some(Figure { value, error, .. }) = figure else { return "–".to_owned() };
+    if error > 0.0 && error >= value {
+        return format!("≤ {}", error_only(value.max(0.0) + error));
+    }
+    let right = if error > 0.0 { (value / error).log10().floor().clamp(1.0, 17.0) as usize } else { most };
+    number(value, right.min(most))
 }
 
 /// Remedies, then what is guaranteed (deviation claims), then the rules of thumb.
@@ -273,4 +289,20 @@ fn paragraph(canvas: &mut Canvas, area: Rect, text: &str) -> f64 {
     let most = ((area.height() / BODY.line_height()) as usize).max(1);
     let lines = wrapped(text, BODY, area.width(), most);
     canvas.lines(area.left, area.top + BODY.size, &lines, BODY, ink)
+}
+
+#[cfg(test)]
+mod tests {
+    use super::*;
+
+    #[test]
+    fn no_digit_is_shown_that_the_error_does_not_support() {
+        let shown = |value, error| within_error(Some(Figure::bound(value, error)), 5);
+        assert_eq!(shown(0.123_456_789, 1e-13), "0.12346");
+        assert_eq!(shown(5.469_3e-6, 4e-8), "5.5×10⁻⁶");
+        assert_eq!(shown(4.39e-16, 4e-14), "≤ 5×10⁻¹⁴");
+        assert_eq!(shown(0.0, 4e-14), "≤ 4×10⁻¹⁴");
+        assert_eq!(shown(0.0, 0.0), "0");
+        assert_eq!(within_error(None, 5), "–");
+    }
 }

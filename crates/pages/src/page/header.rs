@@ -59,7 +59,9 @@ fn safe_sentence(report: &Report) -> Option<String> {
             format!("Safe from n = {}; the last n that fails is {} ({range}).", whole(safe), whole(failing))
         }
         (Some(safe), None) => format!("Safe from n = {} ({range}).", whole(safe)),
-        (None, _) => format!("Not safe from any n up to {} ({range}).", whole(checked.to)),
+        (None, _) => {
+            format!("Not safe from any n up to {0}: the claim still fails at {0}.", whole(checked.to))
+        }
     })
 }
 
@@ -115,13 +117,10 @@ fn cells(report: &Report) -> Vec<(String, String)> {
         value.map_or_else(String::new, |value| format!(" (nominal {})", number(value, 4)))
     };
     if claim.miss_low.is_some() {
-        add(&format!("misses, interval too low{}", nominal(claim.nominal_miss_low)), shown(&claim.miss_low));
+        add(&format!("interval too low{}", nominal(claim.nominal_miss_low)), shown(&claim.miss_low));
     }
     if claim.miss_high.is_some() {
-        add(
-            &format!("misses, interval too high{}", nominal(claim.nominal_miss_high)),
-            shown(&claim.miss_high),
-        );
+        add(&format!("interval too high{}", nominal(claim.nominal_miss_high)), shown(&claim.miss_high));
     }
     if let Some(quantile) = claim.normal_quantile {
         add("normal quantile", number(quantile, 6));

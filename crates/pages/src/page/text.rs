@@ -94,7 +94,9 @@ fn is_noncharacter(c: char) -> bool {
 pub(super) fn wrapped(text: &str, font: Font, limit: f64, most: usize) -> Vec<String> {
     let mut lines: Vec<String> = Vec::new();
     let mut line = String::new();
-    for word in clean(text).split(' ').filter(|word| !word.is_empty()) {
+    // A number and its percent sign stay together.
+    let text = clean(text).replace(" %", "\u{a0}%");
+    for word in text.split(' ').filter(|word| !word.is_empty()) {
         let longer = if line.is_empty() { word.to_owned() } else { format!("{line} {word}") };
         if width(&longer, font) <= limit {
             line = longer;
