@@ -132,8 +132,10 @@ fn cheapest(view: &View<'_>) -> Option<String> {
     let remedies = &full.report.remedies;
     match remedies.iter().find(|remedy| remedy.holds) {
         Some(remedy) => {
-            let actual =
-                remedy.actual.map_or_else(String::new, |a| format!(" ({})", with_error(a.value, a.error)));
+            let actual = remedy
+                .actual
+                .filter(|a| a.value != 0.0)
+                .map_or_else(String::new, |a| format!(" ({})", with_error(a.value, a.error)));
             Some(format!("Cheapest that holds: {}{actual}.", remedy.name))
         }
         None if remedies.is_empty() => None,
