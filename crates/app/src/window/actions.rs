@@ -41,7 +41,10 @@ impl Workbench {
 
     fn carry_out_one(&mut self, ctx: &Context, ask: Ask) {
         match ask {
-            Ask::Edit(edit) => self.edit(&edit),
+            Ask::Edit(edit) => {
+                self.playing = None;
+                self.edit(&edit);
+            }
             Ask::Do(command) => self.command(ctx, command),
             Ask::Example(index) => self.guarded(Next::Example(index)),
             Ask::Open(path) => self.guarded(Next::Open(path)),
@@ -95,14 +98,25 @@ impl Workbench {
             Command::CopyPlan => {
                 ctx.copy_text(gaussgap_conclusions::words::plan_sentence(self.document.scenario()))
             }
+            Command::CopyPicture => self.copy_picture(),
+            Command::ZoomIn => self.board.zoom(1.5, self.cursor),
+            Command::ZoomOut => self.board.zoom(1.0 / 1.5, self.cursor),
+            Command::WholeAxis => self.board.range = None,
+            Command::PanLeft => self.board.pan(-0.1),
+            Command::PanRight => self.board.pan(0.1),
+            Command::Play if self.playing.is_some() => self.playing = None,
+            Command::Play => self.play(),
             Command::Undo => {
+                self.playing = None;
                 self.document.undo();
             }
             Command::Redo => {
+                self.playing = None;
                 self.document.redo();
             }
             Command::Pin => self.pin(),
             Command::Stop => {
+                self.playing = None;
                 if let Some(worker) = &mut self.worker {
                     worker.stop();
                     self.findings.stopped = Some(worker.generation());
@@ -214,6 +228,8 @@ impl Workbench {
     /// Starts with a scenario; pins stay.
     pub(super) fn start_with(&mut self, scenario: Scenario, path: Option<PathBuf>) {
         let revision = self.document.revision();
+        self.playing = None;
+        self.board.range = None;
         self.document = Document::new(scenario, path);
         self.document.start_after(revision);
         self.asked = None;

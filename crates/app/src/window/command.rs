@@ -29,6 +29,13 @@ pub enum Command {
     CursorLeft,
     CursorRight,
     NoCursor,
+    ZoomIn,
+    ZoomOut,
+    WholeAxis,
+    PanLeft,
+    PanRight,
+    Play,
+    CopyPicture,
     Brightness,
     LargerText,
     SmallerText,
@@ -48,6 +55,7 @@ pub struct Keys(pub Modifiers, pub Key);
 const CTRL: Modifiers = Modifiers::COMMAND;
 const CTRL_SHIFT: Modifiers = Modifiers { shift: true, ..Modifiers::COMMAND };
 const ALT: Modifiers = Modifiers::ALT;
+const ALT_SHIFT: Modifiers = Modifiers { shift: true, ..Modifiers::ALT };
 
 /// Every command with its keys, what it does, and whether it may be done while a dialog is open.
 pub const ALL: &[(Command, &[Keys], &str)] = &[
@@ -62,6 +70,12 @@ pub const ALL: &[(Command, &[Keys], &str)] = &[
     (C::Stop, &[Keys(CTRL, Key::Period)], "Stop the computation"),
     (C::CursorLeft, &[Keys(ALT, Key::ArrowLeft)], "Shared cursor to the left"),
     (C::CursorRight, &[Keys(ALT, Key::ArrowRight)], "Shared cursor to the right"),
+    (C::ZoomIn, &[Keys(ALT, Key::Plus), Keys(ALT, Key::Equals)], "Zoom into the figures (Ctrl+wheel)"),
+    (C::ZoomOut, &[Keys(ALT, Key::Minus)], "Zoom out of the figures"),
+    (C::WholeAxis, &[Keys(ALT, Key::Num0)], "The whole axis again (two clicks in a figure)"),
+    (C::PanLeft, &[Keys(ALT_SHIFT, Key::ArrowLeft)], "Shown part of the axis to the left (drag a figure)"),
+    (C::PanRight, &[Keys(ALT_SHIFT, Key::ArrowRight)], "Shown part of the axis to the right"),
+    (C::Play, &[Keys(Modifiers::NONE, Key::F6)], "Play through n, or stop"),
     (C::SwitchAxis, &[Keys(CTRL, Key::U)], "Standard units or the quantity’s own"),
     (C::Enlarge(Figure::Fit), &[Keys(CTRL, Key::Num1)], "Enlarge Fit"),
     (C::Enlarge(Figure::Gap), &[Keys(CTRL, Key::Num2)], "Enlarge Gap"),
@@ -79,6 +93,7 @@ pub const ALL: &[(Command, &[Keys], &str)] = &[
     (C::SaveAs, &[Keys(CTRL_SHIFT, Key::S)], "Save the scenario under another name"),
     (C::Export, &[Keys(CTRL, Key::E)], "Export the page, the report or the curves"),
     (C::CopySummary, &[Keys(CTRL_SHIFT, Key::C)], "Copy the summary as text"),
+    (C::CopyPicture, &[Keys(CTRL_SHIFT, Key::P)], "Copy the page as a picture"),
     (C::Brightness, &[Keys(CTRL, Key::D)], "Light or dark"),
     (C::LargerText, &[Keys(CTRL, Key::Plus), Keys(CTRL, Key::Equals)], "Larger text"),
     (C::SmallerText, &[Keys(CTRL, Key::Minus)], "Smaller text"),

@@ -128,6 +128,29 @@ impl Workbench {
         }
     }
 
+    /// Draws the page beside the window and puts it on the clipboard when it is done.
+    pub(super) fn copy_picture(&mut self) {
+        let Some((found, true, _)) = self.latest() else {
+            return self.fail("The figures do not belong to the present input yet; nothing was copied.");
+        };
+        let full =
+            self.findings.full.as_ref().filter(|(_, full)| full.report.scenario == found.report.scenario);
+        let report = Arc::clone(&full.map_or(found, |(_, full)| full).report);
+        let (sender, context) = (self.pictures.0.clone(), self.context.clone());
+        let draw = move || {
+            let pixels = page::to_pixels(&report, &PageStyle::default());
+            let size = [pixels.width as usize, pixels.height as usize];
+            // The window may have closed meanwhile; then there is nobody to tell.
+            let _ = sender.send(egui::ColorImage::from_rgba_unmultiplied(size, &pixels.rgba));
+            if let Some(context) = context {
+                context.request_repaint();
+            }
+        };
+        if std::thread::Builder::new().name("picture".to_owned()).spawn(draw).is_err() {
+            self.fail("The picture could not be drawn.");
+        }
+    }
+
     /// Takes a column of a CSV file as the law at a place.
     pub(super) fn take_data(&mut self, place: &Place, path: &Path, column: String) {
         let full = std::path::absolute(path).unwrap_or_else(|_| path.to_owned());

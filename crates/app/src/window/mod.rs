@@ -12,6 +12,7 @@ mod fonts;
 pub mod model;
 pub mod numbers;
 pub mod panels;
+mod play;
 pub mod session;
 pub mod tokens;
 pub mod work;

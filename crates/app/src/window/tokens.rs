@@ -120,7 +120,7 @@ pub const NARROW: f32 = 820.0;
 /// Narrowest useful figure.
 pub const FIGURE_WIDTH: f32 = 318.0;
 /// Lowest useful figure.
-pub const FIGURE_HEIGHT: f32 = 200.0;
+pub const FIGURE_HEIGHT: f32 = 186.0;
 /// Width of lines that carry meaning.
 pub const LINE: f32 = 1.8;
 /// Corner radius of everything.

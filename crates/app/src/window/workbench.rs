@@ -75,6 +75,9 @@ pub struct Workbench {
     pub(super) jobs: (Sender<Notice>, Receiver<Notice>),
     pub(super) context: Option<egui::Context>,
     pub(super) seconds: f64,
+    /// When n was last stepped, while n is being played through.
+    pub(super) playing: Option<f64>,
+    pub(super) pictures: (Sender<egui::ColorImage>, Receiver<egui::ColorImage>),
     pub(super) may_close: bool,
     pub(super) after_save: Option<Next>,
     keeps_session: bool,
@@ -111,6 +114,8 @@ impl Workbench {
             jobs: channel(),
             context: None,
             seconds: 0.0,
+            playing: None,
+            pictures: channel(),
             may_close: false,
             after_save: None,
             keeps_session: false,
@@ -178,6 +183,11 @@ impl Workbench {
         if let Ok(notice) = self.jobs.1.try_recv() {
             self.notice = Some(notice);
         }
+        if let Ok(picture) = self.pictures.1.try_recv() {
+            ctx.copy_image(picture);
+            self.say("The page is on the clipboard as a picture.");
+        }
+        self.play_on(ctx);
         self.ask_worker();
         if let Some(Dialog::Path(dialog)) = &mut self.dialog {
             dialog.look();
@@ -296,6 +306,7 @@ impl Workbench {
             pins: pins.all(),
             cursor: self.cursor,
             axis: self.settings.axis,
+            range: self.board.shown_range(),
         });
         let margin = |top, bottom| Margin { left: 12, right: 12, top, bottom };
         let strip = |top, bottom| Frame::new().fill(palette.paper).inner_margin(margin(top, bottom));
@@ -356,12 +367,10 @@ impl Workbench {
             ui,
             &mut self.fields,
             &Arc::clone(self.document.scenario()),
-            near,
-            &self.findings.problems,
+            plan::Surroundings { near, problems: &self.findings.problems, playing: self.playing.is_some() },
             asks,
         );
         ui.add_space(2.0);
-        ui.separator();
         let now = self.circumstances();
         match view {
             Some(view) => finding::show(ui, view, now, asks),
@@ -417,14 +426,15 @@ impl Workbench {
                         asks.list.push(super::panels::Ask::DismissNotice);
                     }
                 } else {
-                    let words = match view.filter(|_| !self.start_page) {
+                    let (words, all) = match view.filter(|_| !self.start_page) {
                         Some(view) => finding::method(view),
-                        None => format!("gaussgap {}", env!("CARGO_PKG_VERSION")),
+                        None => (format!("gaussgap {}", env!("CARGO_PKG_VERSION")), String::new()),
                     };
-                    ui.add(
-                        egui::Label::new(RichText::new(words).size(tokens::SMALL).color(palette.muted))
-                            .truncate(),
-                    );
+                    let words = RichText::new(words).size(tokens::SMALL).color(palette.muted);
+                    let label = ui.add(egui::Label::new(words).truncate());
+                    if !all.is_empty() {
+                        label.on_hover_text(all);
+                    }
                 }
             });
         });

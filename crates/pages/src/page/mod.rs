@@ -19,6 +19,7 @@ mod table;
 mod text;
 
 pub use footer::scenario_digest;
+pub use picture::Pixels;
 pub use style::{PageSize, PageStyle};
 
 use canvas::{Canvas, Rect};
@@ -36,6 +37,11 @@ pub fn to_svg(report: &Report, style: &PageStyle) -> String {
 /// The page as a PNG picture, `style.scale` dots per unit.
 pub fn to_png(report: &Report, style: &PageStyle) -> Vec<u8> {
     picture::png(&svg(report, style, 1.0), style.size.dimensions(), style.usable_scale())
+}
+
+/// The page as dots in memory, for the clipboard.
+pub fn to_pixels(report: &Report, style: &PageStyle) -> Pixels {
+    picture::pixels(&svg(report, style, 1.0), style.size.dimensions(), style.usable_scale())
 }
 
 fn svg(report: &Report, style: &PageStyle, scale: f32) -> String {

@@ -1,6 +1,6 @@
 //! Fit: the law of the standardized sum against the normal, steps drawn as steps, the widest gap marked.
 
-use super::plot::{Axis, Ink, Marker, Plot};
+use super::plot::{Axis, Ink, Marker, Plot, extent};
 use super::table::Table;
 use super::ticks::Scale;
 use super::{Asked, View};
@@ -12,15 +12,41 @@ use gaussgap_simulation::sum::Side;
 
 /// How far the distribution figures reach, in standard units.
 pub const REACH: f64 = 4.2;
+/// The whole horizontal axis of the distribution figures.
+pub const WHOLE: (f64, f64) = (-REACH, REACH);
+/// The narrowest part of it that can be shown.
+pub const NARROWEST: f64 = 0.2;
+
+/// A part of the axis, kept inside the whole and not too narrow.
+pub fn kept((from, to): (f64, f64)) -> (f64, f64) {
+    let whole = 2.0 * REACH;
+    let width = if (to - from).is_finite() { (to - from).clamp(NARROWEST, whole) } else { whole };
+    let middle = if (from + to).is_finite() { (from + to) / 2.0 } else { 0.0 };
+    let from = (middle - width / 2.0).clamp(-REACH, REACH - width);
+    if width >= whole { WHOLE } else { (from, from + width) }
+}
+
+/// A part of the axis made narrower (`factor` > 1) or wider about a place that stays where it is.
+pub fn zoomed((from, to): (f64, f64), factor: f64, about: f64) -> (f64, f64) {
+    kept((about - (about - from) / factor, about + (to - about) / factor))
+}
+
+/// The points of a line inside a part of the axis, with one neighbour on each side; points are in order.
+pub fn within(line: &[[f64; 2]], (from, to): (f64, f64)) -> &[[f64; 2]] {
+    let first = line.partition_point(|point| point[0] < from).saturating_sub(1);
+    let last = (line.partition_point(|point| point[0] <= to) + 1).min(line.len());
+    line.get(first..last).unwrap_or(line)
+}
 
 /// The horizontal axis shared by the distribution figures.
 pub fn z_axis(view: &View<'_>) -> Axis {
+    let (from, to) = view.range;
     match view.own_units() {
         Some(own) => {
             let unit = view.scenario.quantity.as_ref().and_then(|q| q.unit.clone()).unwrap_or_default();
-            Axis::new(-REACH, REACH, Scale::Own(own), unit)
+            Axis::new(from, to, Scale::Own(own), unit)
         }
-        None => Axis::new(-REACH, REACH, Scale::Linear, "z"),
+        None => Axis::new(from, to, Scale::Linear, "z"),
     }
 }
 
@@ -48,21 +74,41 @@ pub fn ghosts(plot: &Plot, ui: &Ui, view: &View<'_>, line: impl Fn(&Prepared) ->
     }
 }
 
-/// The shared cursor: drawn, and moved by the pointer.
+/// The shared cursor, drawn and moved by the pointer; dragging pans, Ctrl with the wheel zooms, two clicks
+/// bring the whole axis back.
 pub fn cursor(plot: &Plot, ui: &mut Ui, view: &View<'_>, name: &str) -> Asked {
     let palette = tokens::palette(ui);
     let id = ui.scope_id().with((name, "pointer"));
-    let response = ui.interact(plot.area, id, Sense::hover());
+    let response = ui.interact(plot.area, id, Sense::CLICK | Sense::DRAG);
     if let Some(z) = view.cursor {
         plot.upright(z, Ink { color: palette.muted, width: 1.0, dash: &[] });
     }
-    Asked { cursor: response.hover_pos().map(|at| plot.x_from_screen(at.x)), edit: None }
+    let place = response.hover_pos().map(|at| plot.x_from_screen(at.x));
+    let mut range = None;
+    if response.double_clicked() {
+        range = Some(WHOLE);
+    } else if response.dragged() && response.drag_delta().x != 0.0 {
+        let (from, to) = view.range;
+        let by = f64::from(response.drag_delta().x / plot.area.width().max(1.0)) * (to - from);
+        range = Some(kept((from - by, to - by)));
+    } else if let Some(about) = place {
+        let factor = f64::from(ui.input(|input| input.zoom_delta()));
+        if factor != 1.0 && factor > 0.0 {
+            range = Some(zoomed(view.range, factor, about));
+        }
+    }
+    Asked { cursor: place, edit: None, range }
 }
 
 /// Draws the figure.
 pub fn draw(ui: &mut Ui, rect: Rect, view: &View<'_>) -> Asked {
     let palette = tokens::palette(ui);
-    let plot = Plot::new(ui, rect, z_axis(view), Axis::new(0.0, 1.0, Scale::Linear, "probability"));
+    let seen = [&view.shown.fit, &view.shown.normal].map(|line| within(line, view.range));
+    let (low, high) = match extent(seen, 1) {
+        Some((low, high)) if view.range != WHOLE && high > low => (low, high),
+        _ => (0.0, 1.0),
+    };
+    let plot = Plot::new(ui, rect, z_axis(view), Axis::new(low, high, Scale::Linear, ""));
     ghosts(&plot, ui, view, |pin| &pin.fit);
     plot.line(&view.shown.normal, Ink::new(palette.normal, dash::NORMAL));
     plot.line(&view.shown.fit, Ink::new(palette.accent, dash::ACTUAL));
@@ -106,11 +152,11 @@ pub fn both_sides(prepared: &Prepared, z: f64) -> Option<(f64, f64, f64)> {
 pub fn readout(view: &View<'_>) -> String {
     if let Some((z, (at, below, normal))) = view.cursor.and_then(|z| Some((z, both_sides(view.shown, z)?))) {
         let actual = if (at - below).abs() > 1e-12 {
-            format!("actual {} to {}", shown(below, 5), shown(at, 5))
+            format!("actual {} to {}", shown(below, 4), shown(at, 4))
         } else {
             format!("actual {}", shown(at, 5))
         };
-        return format!("{}: {actual}, normal {}", view.place(z), shown(normal, 5));
+        return format!("{}: {actual}, normal {}", view.place(z), shown(normal, 4));
     }
     let facts = &view.shown.report.distance;
     match (facts.kolmogorov, facts.at_z) {

@@ -21,16 +21,16 @@ fn band(view: &View<'_>) -> Option<f64> {
 pub fn draw(ui: &mut Ui, rect: Rect, view: &View<'_>) -> Asked {
     let palette = tokens::palette(ui);
     let lines = view.pins.iter().map(|pin| pin.found.gap.as_slice()).chain([view.shown.gap.as_slice()]);
-    let (low, high) = extent(lines, 1).unwrap_or((-0.1, 0.1));
+    let (low, high) = extent(lines.map(|line| fit::within(line, view.range)), 1).unwrap_or((-0.1, 0.1));
     let reach = low.abs().max(high.abs()).max(band(view).unwrap_or(0.0)).max(1e-12) * 1.12;
-    let y = Axis::new(-reach, reach, Scale::Linear, "actual − normal");
+    let y = Axis::new(-reach, reach, Scale::Linear, "");
     let plot = Plot::new(ui, rect, z_axis(view), y);
     if let Some(allowed) = band(view) {
         plot.band(-allowed, allowed, palette.tolerance);
         for edge in [-allowed, allowed] {
             plot.across(edge, Ink::new(palette.tolerance_edge, dash::TOLERANCE).thin());
         }
-        plot.note(-fit::REACH, allowed, "tolerance", palette.tolerance_edge);
+        plot.note(view.range.0, allowed, "tolerance", palette.tolerance_edge);
     }
     plot.across(0.0, Ink { color: palette.muted, width: 1.0, dash: &[] });
     fit::ghosts(&plot, ui, view, |pin| &pin.gap);
@@ -57,13 +57,7 @@ pub fn readout(view: &View<'_>) -> String {
         return format!("{}: actual − normal = {gap}", view.place(z));
     }
     let ends = extent([view.shown.gap.as_slice()], 1);
-    ends.map_or_else(String::new, |(low, high)| {
-        format!(
-            "from {} to {}: negative where large values are likelier than normal",
-            shown(low, 3),
-            shown(high, 3)
-        )
-    })
+    ends.map_or_else(String::new, |(low, high)| format!("between {} and {}", shown(low, 3), shown(high, 3)))
 }
 
 /// The figure as a table.

@@ -26,7 +26,7 @@ pub fn draw(ui: &mut Ui, rect: Rect, view: &View<'_>) -> Asked {
     let low = low.min(spare).min(now.map_or(0.0, f64::log10));
     let farthest = extent(lines, 0).map_or(0.0, |(_, high)| high);
     let x_to = (view.scenario.search.up_to.max(10) as f64).log10().max(farthest).max(n.log10() + 0.1);
-    let y = Axis::new(low - 0.15, high.max(-0.25) + 0.1, Scale::Log, "Kolmogorov distance");
+    let y = Axis::new(low - 0.15, high.max(-0.25) + 0.1, Scale::Log, "");
     let plot = Plot::new(ui, rect, Axis::new(0.0, x_to, Scale::Log, "n"), y);
     if let Some(allowed) = allowed {
         plot.band(low - 1.0, allowed.log10(), palette.tolerance);
@@ -103,24 +103,24 @@ fn handle(ui: &mut Ui, plot: &Plot, view: &View<'_>, n: f64) -> Asked {
         }
     }
     let n_wanted = wanted.map(|wanted| wanted.round().clamp(1.0, LARGEST_N as f64) as u64);
-    Asked { cursor: None, edit: n_wanted.map(|n| Edit::N { slot: 0, n }) }
+    Asked { edit: n_wanted.map(|n| Edit::N { slot: 0, n }), ..Asked::default() }
 }
 
 /// The line under the figure.
 pub fn readout(view: &View<'_>) -> String {
     let facts = &view.shown.report.distance;
     let n = planned_n(&view.shown.report.scenario.source);
-    let mut parts = vec![format!("n = {}", thousands(n as f64))];
+    let mut text = format!("n = {}", thousands(n as f64));
     if let Some(distance) = facts.kolmogorov {
-        parts.push(format!("distance {}", shown(distance.value, 3)));
+        text.push_str(&format!(": {}", shown(distance.value, 3)));
     }
     if let Some(leading) = facts.leading_term {
-        parts.push(format!("leading term {}", shown(leading, 3)));
+        text.push_str(&format!(", first term {}", shown(leading, 3)));
     }
     if let Some(bound) = &facts.berry_esseen {
-        parts.push(format!("Berry–Esseen ≤ {}", shown(bound.value, 3)));
+        text.push_str(&format!(", bound {}", shown(bound.value, 3)));
     }
-    parts.join(", ")
+    text
 }
 
 /// The figure as a table.

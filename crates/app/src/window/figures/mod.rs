@@ -70,6 +70,8 @@ pub struct View<'a> {
     pub cursor: Option<f64>,
     /// The horizontal axis.
     pub axis: Axis,
+    /// The part of the horizontal axis that is shown, in standard units.
+    pub range: (f64, f64),
 }
 
 impl View<'_> {
@@ -98,6 +100,8 @@ pub struct Asked {
     pub cursor: Option<f64>,
     /// A change of the scenario.
     pub edit: Option<Edit>,
+    /// The part of the horizontal axis to show from now on.
+    pub range: Option<(f64, f64)>,
 }
 
 impl Figure {
@@ -115,21 +119,21 @@ impl Figure {
         }
     }
 
-    /// What it shows, in a few words beside the name.
+    /// What its vertical axis or its rows show, in a few words beside the name.
     pub fn subtitle(self, view: &View<'_>) -> &'static str {
         match self {
-            Self::Fit => "law of the standardized sum against Φ",
-            Self::Gap => "actual minus normal",
-            Self::Growth => "distance to the normal over n",
-            Self::Tails => "tail probabilities, log scale",
+            Self::Fit => "probability up to z",
+            Self::Gap => "actual − normal",
+            Self::Growth => "Kolmogorov distance",
+            Self::Tails => "probability beyond z",
             Self::Coverage => match view.scenario.claim {
-                Claim::Interval { .. } => "actual against nominal, each side's misses",
-                Claim::Test { .. } => "actual against nominal size",
-                _ => "actual against normal",
+                Claim::Interval { .. } => "actual and nominal",
+                Claim::Test { .. } => "actual, nominal size",
+                _ => "actual and normal",
             },
             Self::Remedies => "at the planned n",
-            Self::Rules => "what they say, and whether they agree",
-            Self::Cautions => "what the numbers do not say",
+            Self::Rules => "do they agree?",
+            Self::Cautions => "not in the numbers",
         }
     }
 

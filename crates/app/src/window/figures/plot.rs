@@ -2,7 +2,7 @@
 
 use super::super::tokens::{self, Palette};
 use super::ticks::{self, Scale};
-use egui::{Align2, Color32, Painter, Pos2, Rect, Shape, Stroke, Ui, pos2, vec2};
+use egui::{Color32, Painter, Pos2, Rect, Shape, Stroke, Ui, pos2, vec2};
 
 /// One axis of a figure.
 #[derive(Debug, Clone, PartialEq)]
@@ -93,7 +93,7 @@ impl Plot {
         let name_width = text(&x.label, palette.muted).size().x;
         let name_room = if name_width < 34.0 { name_width + 8.0 } else { 10.0 };
         let area = Rect::from_min_max(
-            pos2(outer.left() + label_width + 8.0, outer.top() + line_height + 9.0),
+            pos2(outer.left() + label_width + 8.0, outer.top() + line_height / 2.0 + 1.0),
             pos2(outer.right() - name_room, outer.bottom() - line_height - 6.0),
         );
         let plot = Self { painter: painter.clone(), area, x, y, palette };
@@ -108,7 +108,6 @@ impl Plot {
         }
         plot.x_ticks();
         painter.hline(area.x_range(), area.bottom(), Stroke::new(1.0, palette.muted));
-        painter.text(pos2(outer.left(), outer.top()), Align2::LEFT_TOP, &plot.y.label, font, palette.muted);
         plot
     }
 
@@ -136,7 +135,7 @@ impl Plot {
     /// Horizontal place of a value.
     pub fn x_to_screen(&self, x: f64) -> f32 {
         let share = (x - self.x.from) / (self.x.to - self.x.from);
-        (f64::from(self.area.left()) + share.clamp(-10.0, 10.0) * f64::from(self.area.width())) as f32
+        (f64::from(self.area.left()) + share.clamp(-100.0, 100.0) * f64::from(self.area.width())) as f32
     }
 
     /// Vertical place of a value.
@@ -156,9 +155,16 @@ impl Plot {
         self.painter.with_clip_rect(self.area.expand(1.0).intersect(self.painter.clip_rect()))
     }
 
+    /// The points inside the horizontal axis, with one neighbour on each side. Points are in order of x.
+    fn visible<'a>(&self, points: &'a [[f64; 2]]) -> &'a [[f64; 2]] {
+        let from = points.partition_point(|point| point[0] < self.x.from).saturating_sub(1);
+        let to = (points.partition_point(|point| point[0] <= self.x.to) + 1).min(points.len());
+        points.get(from..to).unwrap_or(points)
+    }
+
     /// A polyline; points with infinite coordinates break nothing, points closer than a pixel are thinned.
     pub fn line(&self, points: &[[f64; 2]], ink: Ink) {
-        let path = self.thinned(points);
+        let path = self.thinned(self.visible(points));
         if path.len() < 2 {
             return;
         }

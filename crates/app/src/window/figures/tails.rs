@@ -36,7 +36,7 @@ pub fn draw(ui: &mut Ui, rect: Rect, view: &View<'_>) -> Asked {
         .chain(inside(&probes))
         .fold(-4.0, f64::min);
     let floor = lowest.max(-12.0) - 0.3;
-    let plot = Plot::new(ui, rect, z_axis(view), Axis::new(floor, 0.0, Scale::Log, "tail probability"));
+    let plot = Plot::new(ui, rect, z_axis(view), Axis::new(floor, 0.0, Scale::Log, ""));
     fit::ghosts(&plot, ui, view, |pin| &pin.tail_low);
     fit::ghosts(&plot, ui, view, |pin| &pin.tail_high);
     for line in [&shown.normal_low, &shown.normal_high] {

@@ -107,6 +107,13 @@ impl Document {
         true
     }
 
+    /// Keeps the step of undo open at a time: what follows of the same kind belongs to it.
+    pub fn hold_step(&mut self, seconds: f64) {
+        if let Some((_, at)) = &mut self.last {
+            *at = seconds;
+        }
+    }
+
     /// Ends the step of undo being typed or dragged.
     pub fn end_step(&mut self) {
         self.last = None;

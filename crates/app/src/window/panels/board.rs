@@ -2,7 +2,7 @@
 
 use super::{Ask, Asks};
 use crate::window::command::Command;
-use crate::window::figures::{self, Figure, View, table};
+use crate::window::figures::{self, Figure, View, fit, table};
 use crate::window::tokens::{self, dash};
 use egui::{
     Frame, Id, Margin, Rect, RichText, ScrollArea, Sense, Stroke, Ui, UiBuilder, Vec2, WidgetInfo, pos2, vec2,
@@ -16,12 +16,39 @@ pub struct Board {
     pub enlarged: Option<Figure>,
     /// Figures shown as tables.
     pub tables: HashSet<Figure>,
+    /// The part of the horizontal axis that is shown; the whole where there is none.
+    pub range: Option<(f64, f64)>,
 }
 
 impl Board {
     /// Enlarges a figure, or brings the board back where it is enlarged already.
     pub fn toggle(&mut self, figure: Figure) {
         self.enlarged = if self.enlarged == Some(figure) { None } else { Some(figure) };
+    }
+
+    /// The part of the horizontal axis that is shown.
+    pub fn shown_range(&self) -> (f64, f64) {
+        self.range.unwrap_or(fit::WHOLE)
+    }
+
+    /// Shows another part of the horizontal axis.
+    pub fn show_range(&mut self, range: (f64, f64)) {
+        let range = fit::kept(range);
+        self.range = (range != fit::WHOLE).then_some(range);
+    }
+
+    /// Moves the shown part by a share of its width.
+    pub fn pan(&mut self, share: f64) {
+        let (from, to) = self.shown_range();
+        let by = share * (to - from);
+        self.show_range((from + by, to + by));
+    }
+
+    /// Narrows the shown part about its middle, or about the cursor where it is inside.
+    pub fn zoom(&mut self, factor: f64, cursor: Option<f64>) {
+        let (from, to) = self.shown_range();
+        let about = cursor.filter(|z| (from..=to).contains(z)).unwrap_or((from + to) / 2.0);
+        self.show_range(fit::zoomed((from, to), factor, about));
     }
 
     /// All drawings as tables, or back.
@@ -77,7 +104,7 @@ fn legend(ui: &mut Ui, view: &View<'_>, asks: &mut Asks) {
         };
         line("actual", palette.accent, dash::ACTUAL);
         line("normal", palette.normal, dash::NORMAL);
-        line("one-term expansion", palette.expansion, dash::EXPANSION);
+        line("expansion", palette.expansion, dash::EXPANSION);
         line("Berry–Esseen bound", palette.bound, dash::BOUND);
         for (index, pin) in view.pins.iter().enumerate() {
             line(&format!("pin: {}", pin.name), palette.ghosts[index % 4], dash::GHOSTS[index % 4]);
@@ -88,6 +115,18 @@ fn legend(ui: &mut Ui, view: &View<'_>, asks: &mut Asks) {
             if ui.small_button(words).on_hover_text(Command::SwitchAxis.tip()).clicked() {
                 asks.command(Command::SwitchAxis);
             }
+        }
+        let mut small = |words: &str, name: &str, command: Command| {
+            let response = ui.small_button(words).on_hover_text(command.tip());
+            response.widget_info(|| WidgetInfo::labeled(egui::accesskit::Role::Button, true, name));
+            if response.clicked() {
+                asks.command(command);
+            }
+        };
+        small("+", "Zoom in", Command::ZoomIn);
+        if view.range != fit::WHOLE {
+            small("−", "Zoom out", Command::ZoomOut);
+            small("whole axis", "Whole axis", Command::WholeAxis);
         }
     });
 }
@@ -149,6 +188,9 @@ fn tile(ui: &mut Ui, size: Vec2, figure: Figure, board: &mut Board, view: &View<
         if asked.cursor.is_some() {
             asks.cursor = asked.cursor;
         }
+        if let Some(range) = asked.range {
+            board.show_range(range);
+        }
         if let Some(edit) = asked.edit {
             asks.edit(edit);
         }
@@ -187,9 +229,8 @@ fn heading(ui: &mut Ui, figure: Figure, as_table: bool, board: &mut Board, view:
                     }
                 }
             }
-            if as_table
-                && enlarged
-                && button(ui, "Copy", &format!("Copy the table of {}", figure.title()), "")
+            if (as_table || enlarged)
+                && button(ui, "Copy", &format!("Copy the table of {}", figure.title()), "Copy as text")
             {
                 asks.list.push(Ask::Copy(figure.table(view).to_text()));
             }

@@ -224,6 +224,8 @@ fn path(ui: &mut Ui, dialog: &mut PathDialog) -> Option<Answer> {
         .desired_width(f32::INFINITY)
         .hint_text("path of the file");
     let response = ui.add(edit);
+    // Before the focus is taken back, which would hide that Enter gave it up.
+    let entered = response.lost_focus() && ui.input(|input| input.key_pressed(Key::Enter));
     super::fields::name(ui, &response, "Path");
     if ui.memory(|memory| memory.focused().is_none()) {
         response.request_focus();
@@ -274,7 +276,6 @@ fn path(ui: &mut Ui, dialog: &mut PathDialog) -> Option<Answer> {
         );
     }
     ui.add_space(tokens::GAP);
-    let entered = response.lost_focus() && ui.input(|input| input.key_pressed(Key::Enter));
     ui.horizontal(|ui| {
         let usable = !dialog.text.trim().is_empty() && !dialog.text.ends_with(std::path::MAIN_SEPARATOR);
         let words = match dialog.purpose {

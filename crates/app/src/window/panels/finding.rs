@@ -132,28 +132,34 @@ fn cheapest(view: &View<'_>) -> Option<String> {
     let remedies = &full.report.remedies;
     match remedies.iter().find(|remedy| remedy.holds) {
         Some(remedy) => {
-            let actual =
-                remedy.actual.map_or_else(String::new, |a| format!(" ({})", with_error(a.value, a.error)));
-            Some(format!("Remedy that holds at this n: {}{actual}.", remedy.name))
+            let actual = remedy
+                .actual
+                .filter(|a| a.value != 0.0)
+                .map_or_else(String::new, |a| format!(" ({})", with_error(a.value, a.error)));
+            Some(format!("Cheapest that holds: {}{actual}.", remedy.name))
         }
         None if remedies.is_empty() => None,
-        None => Some("No remedy looked at holds at this n.".to_owned()),
+        None => Some("No remedy looked at holds.".to_owned()),
     }
 }
 
-/// One line on how the figures were computed.
-pub fn method(view: &View<'_>) -> String {
+/// How the figures were computed: one short line, and everything there is to say.
+pub fn method(view: &View<'_>) -> (String, String) {
     let report = &view.shown.report;
-    let mut words = vec![report.method.detail.clone()];
+    let mut rest = Vec::new();
     if let Some(distance) = report.distance.kolmogorov {
-        words.push(format!("error of the distance ≤ {}", shown(distance.error, 1)));
+        rest.push(format!("error of the distance ≤ {}", shown(distance.error, 1)));
     }
     if let Some(draws) = report.method.draws {
-        words.push(format!("{} draws", thousands(draws as f64)));
+        rest.push(format!("{} draws", thousands(draws as f64)));
     }
-    words.push(format!("{} s", shown(report.method.seconds, 2)));
-    words.retain(|word| !word.is_empty());
-    words.join(" · ")
+    rest.push(format!("{} s", shown(report.method.seconds, 2)));
+    let detail = &report.method.detail;
+    let first = detail.split("; ").next().unwrap_or("");
+    if !first.is_empty() {
+        rest.insert(0, first.to_owned());
+    }
+    (rest.join(" · "), detail.replace("; ", "\n"))
 }
 
 #[cfg(test)]

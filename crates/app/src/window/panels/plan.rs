@@ -2,6 +2,7 @@
 
 use super::Asks;
 use super::fields::{self, Field, Fields};
+use crate::window::command::Command;
 use crate::window::model::edit::{Edit, LARGEST_N};
 use crate::window::model::law_kinds::round_to;
 use crate::window::model::prepared::OwnUnits;
@@ -27,17 +28,26 @@ const CLAIMS: [(&str, &str, &str); 6] = [
     ("curve", "treat as normal", "Whole curve: every probability at once"),
 ];
 
+/// What the sentence needs to know besides the scenario.
+#[derive(Debug, Clone, Copy)]
+pub struct Surroundings<'a> {
+    /// Where the statistic lies, for starting parameters of a newly chosen claim.
+    pub near: Option<OwnUnits>,
+    /// What is wrong with the scenario.
+    pub problems: &'a [Problem],
+    /// Whether n is being played through.
+    pub playing: bool,
+}
+
 /// Draws the sentence.
-///
-/// `near` is where the statistic lies, for starting parameters of a newly chosen claim.
 pub fn show(
     ui: &mut Ui,
     fields: &mut Fields,
     scenario: &Scenario,
-    near: Option<OwnUnits>,
-    problems: &[Problem],
+    around: Surroundings<'_>,
     asks: &mut Asks,
 ) {
+    let Surroundings { near, problems, playing } = around;
     ui.spacing_mut().item_spacing.y = 4.0;
     let before = fields.problems.len();
     ui.horizontal_wrapped(|ui| {
@@ -45,7 +55,7 @@ pub fn show(
         ui.spacing_mut().interact_size.y = 10.0;
         Sentence { ui, fields, scenario, near, asks }.write();
     });
-    n_slider(ui, scenario, asks);
+    n_slider(ui, scenario, playing, asks);
     for (label, problem) in fields.problems.iter().skip(before) {
         super::finding::mistake(ui, &format!("{label}: {problem}"));
     }
@@ -64,13 +74,14 @@ pub fn is_about_plan(pointer: &str) -> bool {
 }
 
 /// The planned n on a logarithmic scale, from 1 to a million.
-fn n_slider(ui: &mut Ui, scenario: &Scenario, asks: &mut Asks) {
+fn n_slider(ui: &mut Ui, scenario: &Scenario, playing: bool, asks: &mut Asks) {
     let Source::Like { n, .. } = &scenario.source else { return };
     let mut power = (*n as f64).log10();
     ui.horizontal(|ui| {
         let palette = tokens::palette(ui);
         ui.label(RichText::new("n").color(palette.muted));
-        ui.spacing_mut().slider_width = (ui.available_width() - 64.0).clamp(80.0, 420.0);
+        ui.spacing_mut().slider_width = (ui.available_width() - 220.0).clamp(80.0, 420.0);
+        ui.spacing_mut().interact_size.y = 16.0;
         let slider = egui::Slider::new(&mut power, 0.0..=6.0).show_value(false).step_by(0.0);
         let response = ui.name_inputs("Planned n (slider, 1 to a million)", |ui| ui.add(slider));
         ui.label(RichText::new("1 to 10⁶, log scale").size(tokens::SMALL).color(palette.muted));
@@ -84,6 +95,10 @@ fn n_slider(ui: &mut Ui, scenario: &Scenario, asks: &mut Asks) {
             asks.edit(Edit::N { slot: 0, n: step });
         }
         asks.end_step |= response.drag_stopped();
+        let words = if playing { "Stop playing" } else { "Play n" };
+        if ui.small_button(words).on_hover_text(Command::Play.tip()).clicked() {
+            asks.command(Command::Play);
+        }
     });
 }
 

@@ -1,5 +1,8 @@
 //! Tests of the window through its accessibility tree, with the real engine.
 
+mod features;
+mod random;
+
 use super::Workbench;
 use super::model::edit::planned_n;
 use super::model::examples;
@@ -132,6 +135,13 @@ fn the_report_is_exported() {
     wait_for(&mut window, "the full answer", |workbench| {
         workbench.latest().is_some_and(|(_, now, full)| now && full)
     });
+    window.key_press_modifiers(egui::Modifiers::COMMAND, egui::Key::E);
+    window.run_steps(3);
+    let path = folder.path().join("by-enter.png");
+    retype(&mut window, Role::TextInput, "Path", &path.display().to_string());
+    window.key_press(egui::Key::Enter);
+    window.run_steps(3);
+    wait_for(&mut window, "the picture", |_| path.exists());
     for (kind, ending) in
         [("Report (JSON)", "json"), ("Curves (CSV)", "csv"), ("Page as vectors (SVG)", "svg")]
     {
