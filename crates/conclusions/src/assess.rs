@@ -39,7 +39,8 @@ pub(crate) fn assess(scenario: &Scenario, effort: Effort, work: &Work) -> Result
 
     let growth = if effort.growth { growth::growth(&prepared, work)? } else { Growth::default() };
     work.set_fraction(0.6);
-    let search = if effort.safe_from { Some(safe_from::search(&prepared, work)?) } else { None };
+    let search =
+        if effort.safe_from { Some(safe_from::search(&prepared, planned_state, work)?) } else { None };
     work.set_fraction(0.8);
     let verdict = Verdict {
         state: planned_state,
@@ -120,7 +121,7 @@ fn claim_facts(
 ) -> Result<(ClaimFacts, Option<Misses>), AssessError> {
     let claim = prepared.scenario.claim;
     if is_studentized(&claim) {
-        let precision = if effort == Effort::PLANNED_N { 0.25 } else { 0.1 };
+        let precision = if effort == Effort::PLANNED_N { 0.25 } else { 0.05 };
         let budget =
             StudentizedBudget { draws: prepared.scenario.method.draws, share: CLAIM_SHARE, precision };
         return evaluate_studentized(prepared, &prepared.laws, &prepared.planned, &budget, work).map_err(

@@ -31,7 +31,7 @@ const MOST_SIMULATED: u64 = 24;
 const SEARCH_SHARE: f64 = 0.1;
 
 /// Simulated summands of the whole search.
-const SUMMANDS: u64 = 240_000_000;
+const SUMMANDS: u64 = 320_000_000;
 
 /// Simulated samples that show nothing but whether a claim is enumerated exactly.
 const PROBE: u64 = 1;
@@ -68,15 +68,15 @@ impl Judged {
     }
 }
 
-/// Searches for *safe from* of the scenario's claim.
-pub(crate) fn search(prepared: &Prepared, work: &Work) -> Result<Found, Cancelled> {
+/// Searches for *safe from* of the scenario's claim, whose state at the planned n is known.
+pub(crate) fn search(prepared: &Prepared, planned: State, work: &Work) -> Result<Found, Cancelled> {
     let judge = |n: u64| judge(prepared, n, SUMMANDS / 4, work);
     let proven = proven_from(prepared);
     if is_studentized(&prepared.scenario.claim) {
         // Exactly enumerated at a middle n? Then every n can be checked like any exact claim.
         let middle = prepared.scenario.search.up_to.clamp(prepared.smallest_n(), 40);
         if !self::judge(prepared, middle, PROBE, work)?.exact {
-            return simulated(prepared, work);
+            return simulated(prepared, planned, work);
         }
     }
     every_n(prepared, proven, work, &judge)
@@ -346,19 +346,19 @@ fn simulated_reach(prepared: &Prepared) -> u64 {
     };
     let allowed = prepared.scenario.tolerance.allowed(nominal);
     let samples = (9.0 / allowed).powi(2) * missing * (1.0 - missing);
-    let affordable = (SUMMANDS as f64 / 2.0 / samples.max(1.0)) as u64;
+    let affordable = (SUMMANDS as f64 / 4.0 / samples.max(1.0)) as u64;
     affordable.max(prepared.total()).clamp(prepared.smallest_n(), up_to.max(prepared.smallest_n()))
 }
 
 /// The search for a simulated claim: a grid from the top down until one n is not shown to hold, then a bisection,
 /// while simulated summands are left.
-fn simulated(
-    prepared: &Prepared,
-    work: &Work,
-) -> Result<Found, Cancelled> {
+fn simulated(prepared: &Prepared, planned: State, work: &Work) -> Result<Found, Cancelled> {
     let low = prepared.smallest_n();
     let mut left = SUMMANDS;
     let mut holds_at = |n: u64| {
+        if n == prepared.total() {
+            return Ok((planned == State::Holds, true));
+        }
         let judged = judge(prepared, n, (left / 2).max(SUMMANDS / 50), work)?;
         left = left.saturating_sub(judged.summands);
         Ok::<_, Cancelled>((judged.holds, left > SUMMANDS / 50))
@@ -373,6 +373,11 @@ fn simulated(
         grid.push(n.round() as u64);
         n /= 2.0;
     }
+    if prepared.total() <= up_to {
+        grid.push(prepared.total());
+    }
+    grid.sort_unstable_by_key(|n| std::cmp::Reverse(*n));
+    grid.dedup();
     for n in grid {
         if !affordable {
             break;

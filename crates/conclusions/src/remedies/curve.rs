@@ -21,8 +21,10 @@ pub(super) fn remedies(prepared: &Prepared, sum: &dyn StandardizedSum) -> Vec<Re
     if let (Some(skewness), Some(excess_kurtosis)) = (moments.skewness, moments.excess_kurtosis) {
         let left = largest_gap(sum, Shape { skewness, excess_kurtosis }, (allowed / 20.0).clamp(1e-4, 1e-2));
         let steps = if sum.lattice_span().is_some() { ", because the steps of the law remain" } else { "" };
-        let note =
-            format!("leaves a gap of at most {} of probability{steps}", about_points(left.value + left.error));
+        let note = format!(
+            "leaves a gap of at most {} of probability{steps}",
+            about_points(left.value + left.error)
+        );
         rows.push(row("Edgeworth expansion, two terms", left, allowed, note));
     }
     let error = sum.kolmogorov().kolmogorov;

@@ -142,7 +142,7 @@ fn claim_spending(
 ///
 /// None for a claim about a total and a fixed value: at another n that is another question.
 fn more(prepared: &Prepared, verdict: &Verdict, work: &Work) -> Result<Option<Remedy>, Cancelled> {
-    if asks_a_total(prepared) {
+    if asks_a_total(prepared) || verdict.state == State::Holds {
         return Ok(None);
     }
     let Some(safe) = verdict.safe_from.filter(|safe| *safe > prepared.total()) else { return Ok(None) };

@@ -87,9 +87,8 @@ pub(super) fn remedies(
 
 /// Whether a row holds or fails beyond its error.
 fn decided(row: &Remedy, claim: &ClaimFacts) -> bool {
-    row.actual.is_none_or(|actual| {
-        ((actual.value - claim.nominal).abs() - claim.allowed).abs() > actual.error
-    })
+    row.actual
+        .is_none_or(|actual| ((actual.value - claim.nominal).abs() - claim.allowed).abs() > actual.error)
 }
 
 /// Critical values.
