@@ -368,6 +368,22 @@ fn undecided_says_how_many_more_draws() {
     assert!(finding.contains("more draws would probably tell") && finding.ends_with('.'), "{finding}");
 }
 
+/// A rule that speaks only of skewed laws is silent on others.
+#[test]
+fn rules_speak_where_they_apply() {
+    let names = |law: serde_json::Value| {
+        let report = report_of(
+            &scenario(json!({"law": law, "n": 500})),
+            Effort { growth: false, safe_from: false, remedies: true },
+        );
+        report.rules_of_thumb.iter().map(|rule| rule.rule.clone()).collect::<Vec<_>>().join("; ")
+    };
+    let skewed = names(json!({"kind": "exponential", "mean": 2}));
+    assert!(skewed.contains("355") && skewed.contains("n ≥ 30") && !skewed.contains("np"), "{skewed}");
+    assert!(!names(json!({"kind": "gamma", "shape": 16, "scale": 2})).contains("355"));
+    assert!(names(json!({"kind": "bernoulli", "p": 0.2})).contains("np ≥ 5"));
+}
+
 /// At another n a total and a fixed value are another question: no remedy of more n, and a caution.
 #[test]
 fn a_fixed_value_of_a_total_is_no_reason_for_more() {
@@ -389,14 +405,6 @@ mod properties {
             (0.01..0.99_f64).prop_map(|p| json!({"kind": "bernoulli", "p": p})),
             (0.05..20.0_f64).prop_map(|shape| json!({"kind": "gamma", "shape": shape, "scale": 3})),
             (0.05..5.0_f64).prop_map(|rate| json!({"kind": "poisson", "rate": rate})),
-            (0.02..0.9_f64).prop_map(|p| json!({"kind": "geometric", "p": p})),
-            (0.2..30.0_f64).prop_map(|shape| json!({"kind": "inverse-gaussian", "mean": 2, "shape": shape})),
-            (0.3..9.0_f64, 0.3..9.0_f64).prop_map(|(a, b)| json!({"kind": "beta", "a": a, "b": b})),
-            (0.2..1.5_f64).prop_map(|log_sd| json!({"kind": "lognormal", "log_mean": 0, "log_sd": log_sd})),
-            (3.1..9.0_f64).prop_map(|shape| json!({"kind": "lomax", "shape": shape, "scale": 5})),
-            (0.1..0.9_f64, 0.5..9.0_f64).prop_map(|(zero, mean)| json!({"kind": "mixture", "parts": [
-                {"weight": zero, "law": {"kind": "constant", "value": 0}},
-                {"weight": 1.0 - zero, "law": {"kind": "exponential", "mean": mean}}]})),
             prop::collection::vec((0..40_i32, 1..20_u32), 2..6).prop_map(|points| {
                 let values = points.iter().map(|(value, _)| *value).chain([41]).collect::<Vec<_>>();
                 let weights = points.iter().map(|(_, weight)| *weight).chain([3]).collect::<Vec<_>>();
@@ -405,12 +413,27 @@ mod properties {
         ]
     }
 
+    /// More families, for like summands: sums of unlike continuous parts can take long.
+    fn any_law_of_more() -> impl Strategy<Value = serde_json::Value> {
+        prop_oneof![
+            any_law(),
+            (0.02..0.9_f64).prop_map(|p| json!({"kind": "geometric", "p": p})),
+            (0.2..30.0_f64).prop_map(|shape| json!({"kind": "inverse-gaussian", "mean": 2, "shape": shape})),
+            (0.3..9.0_f64, 0.3..9.0_f64).prop_map(|(a, b)| json!({"kind": "beta", "a": a, "b": b})),
+            (0.2..1.5_f64).prop_map(|log_sd| json!({"kind": "lognormal", "log_mean": 0, "log_sd": log_sd})),
+            (3.1..9.0_f64).prop_map(|shape| json!({"kind": "lomax", "shape": shape, "scale": 5})),
+            (0.1..0.9_f64, 0.5..9.0_f64).prop_map(|(zero, mean)| json!({"kind": "mixture", "parts": [
+                {"weight": zero, "law": {"kind": "constant", "value": 0}},
+                {"weight": 1.0 - zero, "law": {"kind": "exponential", "mean": mean}}]})),
+        ]
+    }
+
     proptest! {
-        #![proptest_config(ProptestConfig { cases: 16, ..ProptestConfig::default() })]
+        #![proptest_config(ProptestConfig { cases: 24, ..ProptestConfig::default() })]
 
         /// A bound shown next to a distance is never below it.
         #[test]
-        fn berry_esseen_is_never_below_the_distance(law in any_law(), n in 1_u64..300) {
+        fn berry_esseen_is_never_below_the_distance(law in any_law_of_more(), n in 1_u64..300) {
             let report = report_of(&scenario(json!({"law": law, "n": n})), Effort::PLANNED_N);
             let distance = report.distance.kolmogorov.expect("a distance");
             let bound = report.distance.berry_esseen.expect("a bound");
