@@ -85,7 +85,8 @@ impl Random {
                 LawSpec::Mixture { parts: vec![zero, MixturePart { weight: 1.0, law: *inner }] }
             }
             _ => {
-                let other = MixturePart { weight: self.scale(0.05, 5.0), law: self.any_law(depth - 1, reach) };
+                let other =
+                    MixturePart { weight: self.scale(0.05, 5.0), law: self.any_law(depth - 1, reach) };
                 LawSpec::Mixture { parts: vec![MixturePart { weight: 1.0, law: *inner }, other] }
             }
         }
@@ -137,7 +138,9 @@ impl Random {
             19 => LawSpec::Triangular { low: place, mode: place + scale * p, high: place + scale },
             20 => LawSpec::Laplace { mean: place, scale },
             21 => LawSpec::Logistic { mean: place, scale },
-            22 => LawSpec::StudentT { df: self.between(1.5, 12.0), location: Some(place), scale: Some(scale) },
+            22 => {
+                LawSpec::StudentT { df: self.between(1.5, 12.0), location: Some(place), scale: Some(scale) }
+            }
             _ => LawSpec::Histogram {
                 edges: vec![place, place + 0.3 * scale, place + scale, place + 2.5 * scale],
                 weights: vec![1.0, self.scale(0.1, 3.0), self.scale(0.1, 3.0)],

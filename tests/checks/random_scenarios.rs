@@ -1,7 +1,8 @@
 //! Random scenarios: nested laws with ordinary and extreme parameters, any n, any route.
 //!
 //! 60 in the usual test run; `GAUSSGAP_SCENARIOS=10000 cargo test --release -p gaussgap-tests --test
-//! random_scenarios` runs as many as wanted. The seed is fixed, `GAUSSGAP_SEED` changes it.
+//! random_scenarios` runs as many as wanted. The seed is fixed, `GAUSSGAP_SEED` changes it, and
+//! `GAUSSGAP_TRACE=1` names each scenario before it is assessed.
 
 use gaussgap_conclusions::report::Report;
 use gaussgap_conclusions::scenario::Scenario;
@@ -98,9 +99,13 @@ fn random_scenarios_hold_no_surprises() {
                 continue;
             }
         };
+        if setting("GAUSSGAP_TRACE", 0) == 1 {
+            eprintln!("{index}: {text}");
+        }
         let start = Instant::now();
         let work = Work::new();
-        let outcome = std::panic::catch_unwind(|| within(LIMIT, &work, || assess(&scenario, Effort::PLANNED_N, &work)));
+        let outcome =
+            std::panic::catch_unwind(|| within(LIMIT, &work, || assess(&scenario, Effort::PLANNED_N, &work)));
         let taken = start.elapsed();
         if taken > LIMIT / 10 {
             println!("{taken:?}: {text}");

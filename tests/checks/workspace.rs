@@ -23,10 +23,7 @@ fn built_with(package: &str) -> BTreeSet<String> {
 }
 
 fn own_rooms(package: &str) -> BTreeSet<String> {
-    built_with(package)
-        .into_iter()
-        .filter(|name| name.starts_with("gaussgap") && name != package)
-        .collect()
+    built_with(package).into_iter().filter(|name| name.starts_with("gaussgap") && name != package).collect()
 }
 
 fn names(names: &[&str]) -> BTreeSet<String> {
@@ -87,8 +84,18 @@ fn the_engine_and_the_conclusions_do_no_input_or_output() {
 #[test]
 fn the_top_level_holds_only_what_it_should() {
     let allowed = names(&[
-        "Cargo.toml", "Cargo.lock", "README.md", "DEVELOPERS.md", "LICENSE-APACHE", "LICENSE-MIT", "rustfmt.toml",
-        "crates", "assets", "tests", "scenarios", "target",
+        "Cargo.toml",
+        "Cargo.lock",
+        "README.md",
+        "DEVELOPERS.md",
+        "LICENSE-APACHE",
+        "LICENSE-MIT",
+        "rustfmt.toml",
+        "crates",
+        "assets",
+        "tests",
+        "scenarios",
+        "target",
     ]);
     for entry in std::fs::read_dir(top()).expect("the top level") {
         let name = entry.expect("a readable entry").file_name().to_string_lossy().into_owned();

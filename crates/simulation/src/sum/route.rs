@@ -3,7 +3,7 @@
 use super::closed_form::ClosedFormSum;
 use super::contour::ContourSum;
 use super::inversion::InversionSum;
-use super::lattice::LatticeSum;
+use super::lattice::{LatticeSum, RoundedSum};
 use super::{Method, Route, RouteChoice, StandardizedSum, SumError, SumSpec, Term};
 use crate::monte_carlo::sums::SimulatedSum;
 use crate::work::Work;
@@ -40,9 +40,10 @@ pub fn build_exact(spec: &SumSpec, method: &Method, work: &Work) -> Built {
     {
         return Err(SumError::NotAvailable { route: Route::Inversion, reason: reason.clone() });
     }
-    let routes: [fn(&SumSpec, &Method, &Work) -> Built; 3] = [
+    let routes: [fn(&SumSpec, &Method, &Work) -> Built; 4] = [
         |spec, method, work| boxed(ClosedFormSum::build(spec, method, work)),
         |spec, method, work| boxed(LatticeSum::build(spec, method, work)),
+        |spec, _, work| boxed(RoundedSum::build(spec, work)),
         invert,
     ];
     let discrete = spec.terms.iter().all(|term| term.law.pieces.is_empty());
@@ -50,8 +51,8 @@ pub fn build_exact(spec: &SumSpec, method: &Method, work: &Work) -> Built {
     for (index, route) in routes.iter().enumerate() {
         match route(spec, method, work) {
             Err(SumError::NotAvailable { reason, .. }) => {
-                // Why a density has no closed form and no lattice goes without saying.
-                if index == 2 || (index == 1 && discrete) {
+                // Why a density has no closed form and no lattice, and a discrete law no density, goes without saying.
+                if index == 3 && !discrete || (index == 1 || index == 2) && discrete {
                     reasons.push(reason);
                 }
             }
@@ -86,9 +87,7 @@ fn continuous_summands(spec: &SumSpec) -> f64 {
 fn invert(spec: &SumSpec, method: &Method, work: &Work) -> Built {
     let few = continuous_summands(spec) <= FEW_SUMMANDS;
     let contour = || boxed(ContourSum::build(spec, method, work));
-    if few
-        && let decided @ (Ok(_) | Err(SumError::Cancelled(_) | SumError::NoVariance)) = contour()
-    {
+    if few && let decided @ (Ok(_) | Err(SumError::Cancelled(_) | SumError::NoVariance)) = contour() {
         return decided;
     }
     // The transform takes every law, so its reason is the one that tells something.

@@ -167,12 +167,12 @@ impl<C: Cumulative> Steps<C> {
 
     /// Where the indices are many and F runs through them on a smooth curve, |F − Φ| at either side of the jumps
     /// is a smooth function of k whose local maxima lie tenths of a standard deviation apart or more. Indices a
-    /// thirty-second of a standard deviation apart bracket each maximum; halving strides then climb to it. A climb
+    /// sixty-fourth of a standard deviation apart bracket each maximum; halving strides then climb to it. A climb
     /// stops early only where neighbours differ by less than their own errors.
     fn widest_on_a_curve(&self) -> Candidate {
         let (first, last) = self.cumulative.range();
         let middle = self.scale.center.value().round() as i64;
-        let stride = (self.scale.sd / 32.0) as i64;
+        let stride = (self.scale.sd / 64.0) as i64;
         let mut best = Candidate { gap: -1.0, k: middle.clamp(first, last), side: Side::At, error: 0.0 };
         let gap = |k: i64, side: Side| {
             let z = self.scale.z(k);
@@ -184,10 +184,10 @@ impl<C: Cumulative> Steps<C> {
             };
             (figure.value - normal).abs()
         };
-        let points: Vec<i64> = (-160..=160)
+        let points: Vec<i64> = (-320..=320)
             .map(|i| middle + i * stride)
             .filter(|&k| k >= first && k <= last)
-            .chain([first, last].into_iter().filter(|&k| (k - middle).abs() < 160 * stride))
+            .chain([first, last].into_iter().filter(|&k| (k - middle).abs() < 320 * stride))
             .collect();
         for side in [Side::At, Side::JustBelow] {
             let gaps: Vec<f64> = points.iter().map(|&k| gap(k, side)).collect();

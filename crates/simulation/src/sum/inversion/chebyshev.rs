@@ -12,6 +12,15 @@ const OCTAVE_DEPTH: u32 = 12;
 /// What is interpolated: a value and a bound on its error.
 pub(super) type Function<'a> = dyn Fn(f64) -> (Complex64, f64) + Sync + 'a;
 
+/// When the last coefficients of a panel are small enough.
+#[derive(Debug, Clone, Copy)]
+struct Wanted {
+    /// Relative to the largest value on the panel.
+    tolerance: f64,
+    /// Absolute.
+    floor: f64,
+}
+
 /// A Chebyshev series on one interval of its variable.
 #[derive(Debug, Clone)]
 struct Panel {
@@ -54,11 +63,14 @@ impl Interpolant {
         halvings: u32,
     ) -> Self {
         let mut result = Self { panels: Vec::new(), error: 0.0 };
-        result.extend(f, low, high, tolerance, floor, halvings);
+        result.extend(f, low, high, Wanted { tolerance, floor }, halvings, f64::INFINITY);
         result
     }
 
-    fn extend(&mut self, f: &Function, low: f64, high: f64, tolerance: f64, floor: f64, halvings: u32) {
+    /// `before` is the size of the last coefficients on the panel that was halved: on a smooth function they
+    /// fall by many digits, so where they hardly fall they are the function's own noise, and more panels would
+    /// only follow it.
+    fn extend(&mut self, f: &Function, low: f64, high: f64, goal: Wanted, halvings: u32, before: f64) {
         let (middle, half) = (0.5 * (low + high), 0.5 * (high - low));
         let evaluated: Vec<(Complex64, f64)> = (0..NODES)
             .map(|j| f(middle + half * (std::f64::consts::PI * (j as f64 + 0.5) / NODES as f64).cos()))
@@ -81,11 +93,12 @@ impl Interpolant {
         coefficients[0] *= 0.5;
         let largest = values.iter().map(|v| v.norm()).fold(0.0, f64::max);
         let tail = coefficients[NODES - 3..].iter().map(|c| c.norm()).fold(0.0, f64::max);
-        let wanted = (tolerance * largest).max(floor).max(noise);
+        let wanted = (goal.tolerance * largest).max(goal.floor).max(noise);
         let too_small = half <= 1e-13 * middle.abs();
-        if tail > wanted && halvings > 0 && !too_small {
-            self.extend(f, low, middle, tolerance, floor, halvings - 1);
-            self.extend(f, middle, high, tolerance, floor, halvings - 1);
+        let is_noise = tail > 0.1 * before && tail < 1e-11 * largest;
+        if tail > wanted && halvings > 0 && !too_small && !is_noise {
+            self.extend(f, low, middle, goal, halvings - 1, tail);
+            self.extend(f, middle, high, goal, halvings - 1, tail);
             return;
         }
         self.error = self.error.max(4.0 * tail + 2.0 * f64::EPSILON * largest + 2.0 * noise);

@@ -4,18 +4,28 @@
 //!
 //! P(Z ≤ z) = w/2 + Σ_{k≥0} Im[φ(t_k) e^{i t_k z}]/(π(k + ½)) + alias,
 //!
-//! |alias| ≤ max(P(Z < z − P), P(Z > z + P)) (Davies 1973, Biometrika 60:415), w the total mass. One complex
-//! transform gives the sum on a grid of ≥ 8 points per shortest wave; between grid points a central polynomial
+//! |alias| ≤ max(P(Z < z − P), P(Z > z + P)) (Davies 1973, Biometrika 60:415), w the total mass. Eight complex
+//! transforms give the sum on a grid of ≥ 8 points per shortest wave; between grid points a central polynomial
 //! through 16 of them is used. A wave of phase θ per step is interpolated to (θ/2)¹⁶·0.2, and the sum of that
 //! over all waves is the stated interpolation error.
 
 use num_complex::Complex64;
 use rustfft::FftPlanner;
 use std::cell::RefCell;
+use std::sync::Mutex;
 
 thread_local! {
     static PLANNER: RefCell<FftPlanner<f64>> = RefCell::new(FftPlanner::new());
 }
+
+/// Grid points per shortest wave.
+const FINER: usize = 8;
+/// Transforms up to this length keep their plans, one set per thread.
+const KEPT_UP_TO: usize = 1 << 15;
+/// Sums of this many waves or more are made one at a time: their buffers take up to 40 MB.
+const ALONE_FROM: usize = 1 << 17;
+
+static ALONE: Mutex<()> = Mutex::new(());
 
 /// Points of the interpolating polynomial.
 const POINTS: usize = 16;
@@ -44,24 +54,48 @@ pub(super) struct FourierPart {
 impl FourierPart {
     /// Sums the series on a grid that covers [low, high], an interval shorter than the period 2π/spacing.
     pub(super) fn new(spacing: f64, coefficients: Vec<Complex64>, mass: f64, low: f64, high: f64) -> Self {
-        let length = (coefficients.len() * 8).next_power_of_two().max(512);
+        let waves = coefficients.len().next_power_of_two().max(64);
+        let length = waves * FINER;
+        let _alone =
+            (waves >= ALONE_FROM).then(|| ALONE.lock().unwrap_or_else(std::sync::PoisonError::into_inner));
         let period = 2.0 * std::f64::consts::PI / spacing;
         let step = period / length as f64;
         let start = low - step * POINTS as f64;
-        let mut buffer = vec![Complex64::ZERO; length];
-        for (k, c) in coefficients.iter().enumerate() {
-            buffer[k] = c * Complex64::from_polar(1.0, (k as f64 + 0.5) * spacing * start);
-        }
-        PLANNER.with_borrow_mut(|planner| planner.plan_fft_inverse(length)).process(&mut buffer);
         let wanted = (((high - low) / step).ceil() as usize + 2 * POINTS + 1).min(length);
         let half_mass = 0.5 * mass;
         let quarter = std::f64::consts::PI / length as f64;
-        let ratio = Complex64::from_polar(1.0, quarter);
-        let mut values = Vec::with_capacity(wanted);
-        for (block, chunk) in buffer[..wanted].chunks(32).enumerate() {
-            let mut turn = Complex64::from_polar(1.0, quarter * (32 * block) as f64);
-            for v in chunk {
-                values.push(half_mass + (v * turn).im);
+        // Point FINER·q + r of the grid is point q of a transform of the coefficients turned r times: FINER short
+        // transforms instead of a long one that is mostly zeros.
+        let plan = if waves > KEPT_UP_TO {
+            FftPlanner::new().plan_fft_inverse(waves)
+        } else {
+            PLANNER.with_borrow_mut(|planner| planner.plan_fft_inverse(waves))
+        };
+        let mut turned: Vec<Complex64> = coefficients
+            .iter()
+            .enumerate()
+            .map(|(k, c)| c * Complex64::from_polar(1.0, (k as f64 + 0.5) * spacing * start))
+            .collect();
+        let turns: Vec<Complex64> = (0..turned.len())
+            .map(|k| Complex64::from_polar(1.0, 2.0 * std::f64::consts::PI * k as f64 / length as f64))
+            .collect();
+        let mut values = vec![0.0; wanted];
+        let mut buffer = vec![Complex64::ZERO; waves];
+        let mut scratch = vec![Complex64::ZERO; plan.get_inplace_scratch_len()];
+        let ratio = Complex64::from_polar(1.0, quarter * FINER as f64);
+        for r in 0..FINER {
+            if r > 0 {
+                turned.iter_mut().zip(&turns).for_each(|(value, turn)| *value *= turn);
+            }
+            buffer[..turned.len()].copy_from_slice(&turned);
+            buffer[turned.len()..].fill(Complex64::ZERO);
+            plan.process_with_scratch(&mut buffer, &mut scratch);
+            let mut turn = Complex64::ONE;
+            for (q, (value, sum)) in values.iter_mut().skip(r).step_by(FINER).zip(&buffer).enumerate() {
+                if q % 16 == 0 {
+                    turn = Complex64::from_polar(1.0, quarter * (FINER * q + r) as f64);
+                }
+                *value = half_mass + (sum * turn).im;
                 turn *= ratio;
             }
         }
@@ -80,7 +114,7 @@ impl FourierPart {
             step,
             values,
             interpolation: 0.2 * interpolation,
-            rounding: f64::EPSILON * (0.5 + total) * (2.0 + (length as f64).log2()),
+            rounding: f64::EPSILON * (0.5 + total) * (24.0 + (length as f64).log2()),
         }
     }
 

@@ -93,6 +93,9 @@ pub(super) struct Standard {
     pub(super) sd: f64,
 }
 
+/// Panels of one stretch; what is left unsplit counts in the error.
+const MOST_PANELS: usize = 1500;
+
 impl Stretch {
     /// All stretches of a piece, cut at its breakpoints and, for two-sided families, at the median.
     pub(super) fn of_piece(piece: &Piece, standard: Standard) -> Vec<Self> {
@@ -223,10 +226,11 @@ impl Stretch {
         let (_, _, rough) = rule(coarse);
         let difference = (total - rough).abs();
         let too_long = !self.rotates && length > 8.0;
-        let splittable = middle != inner && middle != outer;
-        if splittable
-            && ((depth < 60 && difference > 2e-15 * total && total > 1e-17) || (too_long && depth < 12))
-        {
+        let splittable = middle != inner && middle != outer && self.panels.len() < MOST_PANELS;
+        // Halving gains many digits until the density's own rounding is reached, which shows as a difference
+        // far below what the whole law weighs.
+        let rough_panel = difference > 2e-15 * total && difference > 2e-17;
+        if splittable && ((depth < 60 && rough_panel) || (too_long && depth < 12)) {
             self.add_panels(inner, middle, fine, coarse, depth + 1);
             self.add_panels(middle, outer, fine, coarse, depth + 1);
             return;

@@ -3,7 +3,8 @@
 //! Once the characteristic function of the sum is negligible beyond a narrow band of frequencies, the masses are
 //! a short Fourier series in the index, and so are their running sums: no table of masses is needed.
 
-use super::power::{Frequency, frequency, moduli};
+use super::power::{Frequency, product};
+use super::shared::{Logarithm, fine_enough};
 use super::summand::{Part, center};
 use num_complex::Complex64;
 use std::f64::consts::TAU;
@@ -14,46 +15,68 @@ const U: f64 = f64::EPSILON / 2.0;
 /// Characteristic functions below e^−46 ≈ 1e-20 count as 0.
 const NEGLIGIBLE: f64 = 46.0;
 
-/// Longest transform spent on proving that a summand's characteristic function stays away from 1.
-const LONGEST_PROOF: usize = 1 << 20;
+/// Widest band that counts as narrow, in 1/sd: there is no wave shorter than 2π/27 = 0.23 sd in it.
+const WIDEST: f64 = 27.0;
 
-/// The frequency beyond which the characteristic function of the sum is below e^−46, proven; `None` if it is not.
+/// The frequency beyond which the characteristic function of the sum is below e^−46, proven; `None` if that is not
+/// proven or the band is not narrow.
 ///
-/// For one copy about its mean, |φ(t)| ≤ |1 − σ²t²/2| + E|y|³|t|³/6 ≤ 1 − σ²t²/4 as long as
-/// t ≤ t* = 3σ²/(2E|y|³) (then also σt ≤ 3/2). Summed over all copies, ln|φ| ≤ −(t·sd)²/4, which is below −46 from
-/// 13.6/sd on. Beyond the smallest t*, |φ| is taken from a transform with steps Δ, and between its points from
-/// the Lipschitz bound E|y|·Δ/2.
+/// Far from 0 the bounds of [`super::shared::Squares`] are multiplied. Near 0, cos u ≤ 1 − u²/2 + u⁴/24 gives
+/// |φ(t)|² ≤ 1 − σ²t² + m t⁴/24 with m = E(X − X′)⁴ = 2μ₄ + 6σ⁴, which falls up to t* = √(12σ²/m).
 pub(crate) fn band(parts: &[Part], sd: f64) -> Option<f64> {
-    let band = (4.0 * NEGLIGIBLE).sqrt() / sd;
-    let mut safe = f64::INFINITY;
-    for part in parts {
-        let (second, third) = part
-            .deviations()
-            .fold((0.0, 0.0), |(two, three), (y, p)| (two + p * y * y, three + p * y.abs().powi(3)));
-        if second > 0.0 {
-            safe = f64::min(safe, 1.5 * second / third);
-        }
-    }
-    if !(safe.is_finite() && 2.0 * band <= safe) {
+    let varied: Vec<&Part> = parts.iter().filter(|part| part.offsets.len() > 1).collect();
+    let length = varied.iter().map(|part| fine_enough(part)).max()?;
+    // Too few copies to make anything negligible, or steps too coarse for the law.
+    let copies: f64 = varied.iter().map(|part| part.count).sum();
+    let step = TAU / length as f64;
+    if copies < 8.0 || varied.iter().any(|part| part.central_moments().0 * step * step > 2.0) {
         return None;
     }
-    let mut length = ((8.0 * TAU / safe).max(64.0) as usize).next_power_of_two();
-    while length <= LONGEST_PROOF {
-        let step = TAU / length as f64;
-        let from = ((safe / step).floor() as usize).saturating_sub(1);
-        let mut total = vec![0.0; length / 2 + 1 - from];
-        for part in parts {
-            let slack = 0.5 * step * part.mean_deviation() + 1e-12;
-            for (sum, modulus) in total.iter_mut().zip(&moduli(part, length)[from..]) {
-                *sum += part.count * (modulus + slack).min(1.0).ln();
+    let far = if let [part] = varied[..] {
+        let squares = part.squares(length);
+        let step = squares.first_below((-2.0 * NEGLIGIBLE / part.count).exp());
+        if step >= squares.bounds().len() {
+            return None;
+        }
+        TAU * step as f64 / squares.length as f64
+    } else {
+        let mut total = vec![0.0; length / 2];
+        for part in &varied {
+            for (sum, square) in total.iter_mut().zip(part.squares(length).bounds()) {
+                *sum += 0.5 * part.count * square.ln();
             }
         }
-        if total.iter().all(|&sum| sum <= -NEGLIGIBLE) {
-            return Some(band);
+        let last = total.iter().rposition(|&sum| sum > -NEGLIGIBLE).map_or(0, |j| j + 1);
+        if last >= total.len() {
+            return None;
         }
-        length *= 4;
+        TAU * last as f64 / length as f64
+    };
+    let moments: Vec<(f64, f64, f64)> = varied
+        .iter()
+        .map(|part| {
+            let (second, _, fourth) = part.central_moments();
+            (part.count, second, 2.0 * fourth + 6.0 * second * second)
+        })
+        .collect();
+    let falls = moments.iter().map(|(_, two, four)| (12.0 * two / four).sqrt()).fold(f64::INFINITY, f64::min);
+    let near = |t: f64| -> f64 {
+        let square = t * t;
+        let log = |&(count, two, four): &(f64, f64, f64)| {
+            0.5 * count * libm::log1p(-two * square + four * square * square / 24.0)
+        };
+        moments.iter().map(log).sum()
+    };
+    let mut edge = far;
+    if far < falls && near(falls) < -NEGLIGIBLE {
+        let (mut low, mut high) = (0.0, falls);
+        for _ in 0..50 {
+            let middle = 0.5 * (low + high);
+            if near(middle) < -NEGLIGIBLE { high = middle } else { low = middle }
+        }
+        edge = edge.min(high);
     }
-    None
+    (edge * sd <= WIDEST).then_some(edge)
 }
 
 /// The Fourier series of the masses of a sum on a cycle of indices.
@@ -96,8 +119,12 @@ impl Harmonics {
         let last = ((band * length / TAU).ceil() as i64).min(period / 2);
         let mut coefficients = Vec::with_capacity(last.max(0) as usize);
         let mut error = 0.0;
+        let each: Vec<_> = parts.iter().map(|part| part.logarithms(period, last.max(0) as usize)).collect();
+        let mut here: Vec<Logarithm> = Vec::with_capacity(parts.len());
         for j in 1..=last {
-            let Frequency { logarithm, angle, units } = frequency(parts, from_first, j as f64, length);
+            here.clear();
+            here.extend(each.iter().map(|list| list[j as usize - 1]));
+            let Frequency { logarithm, angle, units } = product(parts, &here, from_first, j as f64, length);
             // The two halves of the spectrum are conjugate, except at the middle, which stands alone.
             let halves = if 2 * j == period { 1.0 } else { 2.0 };
             let value = Complex64::from_polar(halves / length * logarithm.exp(), angle);

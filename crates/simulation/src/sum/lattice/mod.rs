@@ -3,7 +3,10 @@
 mod commensurable;
 mod convolution;
 mod harmonics;
+mod plans;
 mod power;
+mod rounded;
+mod shared;
 mod summand;
 mod tail;
 
@@ -11,13 +14,14 @@ use super::steps::{Cumulative, CumulativeTable, Scale, Steps};
 use super::{Distance, Method, Route, StandardizedSum, SumError, SumMoments, SumSpec};
 use crate::figure::Figure;
 use crate::work::Work;
-use commensurable::common_lattice;
+use commensurable::{CommonLattice, common_lattice};
 use harmonics::{Harmonics, Sums, band};
+pub use rounded::RoundedSum;
 use summand::{Part, center, range, window};
 use tail::{SERIES_FROM, Tail};
 
-/// Longest transform: two tables and two buffers of this length stay below 150 MB.
-const LONGEST: usize = 1 << 22;
+/// Longest transform: its plan, buffers and tables stay below 100 MB.
+const LONGEST: usize = 1 << 20;
 
 /// Sums over at most this many values are convolved directly.
 const DIRECT: f64 = 1024.0;
@@ -97,9 +101,14 @@ impl LatticeSum {
     /// Builds the distribution, or says why the sum is not one for this route.
     pub fn build(spec: &SumSpec, _method: &Method, work: &Work) -> Result<Self, SumError> {
         work.check()?;
-        let common = common_lattice(spec).map_err(unavailable)?;
-        let parts = common.parts;
         let n: u64 = spec.terms.iter().map(|term| term.count).sum();
+        Self::of_common(common_lattice(spec).map_err(unavailable)?, n, work)
+    }
+
+    /// Builds the distribution of a sum given in lattice units.
+    fn of_common(common: CommonLattice, n: u64, work: &Work) -> Result<Self, SumError> {
+        let mut parts = common.parts;
+        shared::remember(&mut parts);
         let (mut variance, mut third, mut fourth, mut deviation) = (0.0, 0.0, 0.0, 0.0);
         for part in &parts {
             let (two, three, four) = part.central_moments();
@@ -156,7 +165,9 @@ impl LatticeSum {
             let outside = 2.0 * (-OUTSIDE).exp();
             let narrow = if last - first >= SERIES_FROM { band(&parts, sd) } else { None };
             let (bulk, absolute, how) = if let Some(narrow) = narrow {
-                let series = Harmonics::new(&parts, first, last - first + 1, outside, narrow, Sums::Running);
+                // A cycle that many n have in common.
+                let period = ((last - first + 1) as u64).next_power_of_two() as i64;
+                let series = Harmonics::new(&parts, first, period, outside, narrow, Sums::Running);
                 let absolute = series.error;
                 (Bulk::Series(series), absolute, "Fourier series of a narrow band".to_owned())
             } else if size > LONGEST as f64 {

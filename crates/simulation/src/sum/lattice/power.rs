@@ -1,21 +1,21 @@
 //! Masses of a lattice sum on a window, by one real transform there and one back.
 
+use super::plans;
+use super::shared::Logarithm;
 use super::summand::{Part, center};
 use crate::sum::twofold::Twofold;
 use crate::work::{Cancelled, Work};
 use num_complex::Complex64;
-use realfft::RealFftPlanner;
 use std::f64::consts::{PI, TAU};
-use std::sync::{LazyLock, Mutex};
-
-/// Plans are kept: making one costs as much as several transforms.
-static PLANS: LazyLock<Mutex<RealFftPlanner<f64>>> = LazyLock::new(|| Mutex::new(RealFftPlanner::new()));
 
 /// Unit roundoff.
 const U: f64 = f64::EPSILON / 2.0;
 
 /// Powers of the characteristic function below e^−46 ≈ 1e-20 are taken as 0.
 const NEGLIGIBLE: f64 = -46.0;
+
+/// Frequencies between two looks at whether to stop.
+const CHECKED: usize = 1024;
 
 /// At most this many evaluations of e^(iu) to refine the frequencies that matter.
 const REFINEMENTS: usize = 2_000_000;
@@ -47,7 +47,7 @@ pub(crate) fn transform_length(least: usize) -> usize {
 /// φ − 1 = −2 Σ p sin²(ty/2) + i Σ p (sin ty − ty), because Σ p y = 0: while ty is small no term is larger than
 /// what it adds, and the error is a few units of Σ p (ty)². Where ty is not small, the terms ty cancel and leave
 /// an error of a few units of Σ p |ty|, rounding of t itself included.
-fn log_characteristic(part: &Part, t: f64) -> (f64, f64, f64) {
+pub(crate) fn log_characteristic(part: &Part, t: f64) -> Logarithm {
     let (mut re, mut im, mut units) = (0.0, 0.0, 0.0);
     for (y, mass) in part.deviations() {
         let u = t * y;
@@ -99,10 +99,8 @@ pub(crate) fn masses(
     damping: f64,
     work: &Work,
 ) -> Result<Masses, Cancelled> {
-    let (forward, backward) = {
-        let mut planner = PLANS.lock().unwrap_or_else(|poisoned| poisoned.into_inner());
-        (planner.plan_fft_forward(length), planner.plan_fft_inverse(length))
-    };
+    let _alone = plans::alone(length);
+    let plans::Plan { forward, backward } = plans::plan(length);
     let half = length / 2;
     let log_length = (length as f64).log2();
     let mut scratch = vec![Complex64::default(); forward.get_scratch_len().max(backward.get_scratch_len())];
@@ -126,6 +124,9 @@ pub(crate) fn masses(
         );
         let cut = (2.0 * NEGLIGIBLE / part.count).exp();
         for j in 1..=half {
+            if j % CHECKED == 0 {
+                work.check()?;
+            }
             let square = spectrum[j].norm_sqr();
             if magnitude[j] == f64::NEG_INFINITY || square < cut {
                 magnitude[j] = f64::NEG_INFINITY;
@@ -150,6 +151,9 @@ pub(crate) fn masses(
     let mut overtaken = 0;
     let (mut run_error, mut damped_error) = (0.0, 0.0);
     for j in 1..=half {
+        if j % CHECKED == 0 {
+            work.check()?;
+        }
         if magnitude[j] < NEGLIGIBLE {
             spectrum[j] = Complex64::default();
             continue;
@@ -210,9 +214,20 @@ pub(crate) struct Frequency {
 /// directly.
 pub(crate) fn frequency(parts: &[Part], from_first: Twofold, j: f64, length: f64) -> Frequency {
     let t = TAU * j / length;
+    let each: Vec<Logarithm> = parts.iter().map(|part| log_characteristic(part, t)).collect();
+    product(parts, &each, from_first, j, length)
+}
+
+/// The same from the logarithms of one copy of each part at that frequency.
+pub(crate) fn product(
+    parts: &[Part],
+    logarithms: &[Logarithm],
+    from_first: Twofold,
+    j: f64,
+    length: f64,
+) -> Frequency {
     let (mut logarithm, mut angle, mut units) = (0.0, 0.0, 24.0);
-    for part in parts {
-        let (log, argument, each) = log_characteristic(part, t);
+    for (part, &(log, argument, each)) in parts.iter().zip(logarithms) {
         logarithm += part.count * log;
         angle += reduced(part.count, argument);
         units += part.count * (each + 4.0 * (log.abs() + argument.abs()));
@@ -220,22 +235,6 @@ pub(crate) fn frequency(parts: &[Part], from_first: Twofold, j: f64, length: f64
     // The transform has e^(−itk): the conjugate, turned by the distance from the start to the mean.
     let turned = fraction(from_first.times(j).over(length));
     Frequency { logarithm, angle: -angle - TAU * turned, units }
-}
-
-/// |φ| of one copy at 0, 2π/length, …, π.
-pub(crate) fn moduli(part: &Part, length: usize) -> Vec<f64> {
-    let forward = {
-        let mut planner = PLANS.lock().unwrap_or_else(|poisoned| poisoned.into_inner());
-        planner.plan_fft_forward(length)
-    };
-    let mut masses = vec![0.0; length];
-    for (&offset, &mass) in part.offsets.iter().zip(&part.masses) {
-        masses[offset.rem_euclid(length as i64) as usize] += mass;
-    }
-    let mut spectrum = vec![Complex64::default(); length / 2 + 1];
-    // The lengths are the planned ones, so the transform cannot fail.
-    let _ = forward.process(&mut masses, &mut spectrum);
-    spectrum.iter().map(|value| value.norm()).collect()
 }
 
 /// |1 − e^(−τ+it)| from sin(t/2): √((1 − e^−τ)² + 4e^−τ sin²(t/2)).

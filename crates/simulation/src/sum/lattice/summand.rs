@@ -1,7 +1,9 @@
 //! The unlike parts of a lattice sum in lattice units, and their generating functions.
 
+use super::shared::{Shared, nearest_tilt, tilt};
 use crate::special::elementary::exp_minus_1_minus_real;
 use crate::sum::twofold::Twofold;
+use std::sync::Arc;
 
 /// `count` independent copies of a law on the integers, centred at its mean.
 #[derive(Debug, Clone)]
@@ -16,6 +18,8 @@ pub(crate) struct Part {
     pub masses: Vec<f64>,
     /// Mean minus `anchor`.
     pub mean: Twofold,
+    /// What does not depend on the number of copies.
+    pub shared: Arc<Shared>,
 }
 
 /// Cumulant generating function of the centred sum with two derivatives.
@@ -41,7 +45,7 @@ impl Part {
         let offsets: Vec<i64> = values.iter().map(|&k| k - anchor).collect();
         let masses: Vec<f64> = masses.iter().map(|mass| mass / total).collect();
         let mean = mean_of(&offsets, &masses);
-        Self { count, anchor, offsets, masses, mean }
+        Self { count, anchor, offsets, masses, mean, shared: Arc::default() }
     }
 
     /// Smallest and largest value.
@@ -94,6 +98,16 @@ impl Part {
         to.value += self.count * logarithm;
         to.slope += self.count * mean;
         to.curvature += self.count * variance;
+    }
+
+    /// ln E e^(θ(X − E X)) of one copy.
+    pub fn cumulant(&self, theta: f64) -> f64 {
+        let largest = self.deviations().map(|(y, _)| theta * y).fold(0.0, f64::max);
+        if largest > SAFE_EXPONENT {
+            let sum: f64 = self.deviations().map(|(y, mass)| mass * (theta * y - largest).exp()).sum();
+            return largest + sum.ln();
+        }
+        libm::log1p(self.deviations().map(|(y, mass)| mass * exp_minus_1_minus_real(theta * y)).sum())
     }
 
     /// The part tilted by e^(θx), renormalized.
@@ -156,35 +170,30 @@ pub(crate) fn range(parts: &[Part]) -> (f64, f64) {
 pub(crate) fn window(parts: &[Part], exponent: f64, sd: f64) -> (i64, i64) {
     let center = center(parts).value();
     let (least, most) = range(parts);
-    let reach = |sign: f64| -> f64 {
-        let distance = |log_theta: f64| {
-            let theta = sign * log_theta.exp();
-            let value = cumulants(parts, theta).value;
-            let distance = (value + exponent) / theta.abs();
+    let reach = |upper: bool| -> f64 {
+        let distance = |i: i32| {
+            let value: f64 = parts.iter().map(|part| part.count * part.cumulant_at(i, upper)).sum();
+            let distance = (value + exponent) / tilt(i);
             if distance.is_finite() { distance } else { f64::MAX }
         };
-        // Golden section in ln θ around the normal answer √(2·exponent)/sd.
-        let start = ((2.0 * exponent).sqrt() / sd).ln();
-        let (mut a, mut b) = (start - 3.0, start + 4.0);
-        const SECTION: f64 = 0.381_966_011_250_105_1;
-        let (mut x, mut y) = (a + SECTION * (b - a), b - SECTION * (b - a));
-        let (mut at_x, mut at_y) = (distance(x), distance(y));
-        for _ in 0..12 {
-            if at_x < at_y {
-                (b, y, at_y) = (y, x, at_x);
-                x = a + SECTION * (b - a);
-                at_x = distance(x);
+        // Halving strides among the tilts that are kept, from the normal answer √(2·exponent)/sd.
+        let mut best = nearest_tilt((2.0 * exponent).sqrt() / sd);
+        let (mut least, mut stride) = (distance(best), 8);
+        while stride > 0 {
+            let (before, after) = (distance(best - stride), distance(best + stride));
+            if before.min(after) < least {
+                best += if before < after { -stride } else { stride };
+                least = before.min(after);
             } else {
-                (a, x, at_x) = (x, y, at_y);
-                y = b - SECTION * (b - a);
-                at_y = distance(y);
+                stride /= 2;
             }
         }
-        at_x.min(at_y)
+        least
     };
     // The whole support is cheaper than a search where it is narrow.
-    let low = if center - least < 4.0 * sd { least } else { (center - reach(-1.0) - 2.0).floor().max(least) };
-    let high = if most - center < 4.0 * sd { most } else { (center + reach(1.0) + 2.0).ceil().min(most) };
+    let low =
+        if center - least < 4.0 * sd { least } else { (center - reach(false) - 2.0).floor().max(least) };
+    let high = if most - center < 4.0 * sd { most } else { (center + reach(true) + 2.0).ceil().min(most) };
     (low as i64, high as i64)
 }
 
