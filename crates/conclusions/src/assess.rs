@@ -9,7 +9,7 @@ use crate::report::{
     Verdict,
 };
 use crate::scenario::{Claim, Scenario};
-use crate::words::finding::{NoFigure, because, without_figure};
+use crate::words::finding::{NoFigure, because, more_draws, without_figure};
 use crate::{AssessError, Effort, Problem, cautions, facts, growth, remedies, rules_of_thumb, safe_from};
 use gaussgap_simulation::monte_carlo::studentized::Misses;
 use gaussgap_simulation::sum::{StandardizedSum, SumError, SumSpec, build};
@@ -34,15 +34,17 @@ pub(crate) fn assess(scenario: &Scenario, effort: Effort, work: &Work) -> Result
     work.set_fraction(0.2);
     let (claim, misses) = claim_facts(&prepared, sum, effort, work)?;
     let planned_state = state(&claim);
+    let draws = misses.as_ref().map_or_else(|| sum.draws(), |misses| misses.draws);
     work.set_fraction(0.4);
 
     let growth = if effort.growth { growth::growth(&prepared, work)? } else { Growth::default() };
     work.set_fraction(0.6);
-    let search = if effort.safe_from { Some(safe_from::search(&prepared, work)?) } else { None };
+    let search =
+        if effort.safe_from { Some(safe_from::search(&prepared, planned_state, work)?) } else { None };
     work.set_fraction(0.8);
     let verdict = Verdict {
         state: planned_state,
-        because: finding(&prepared, &claim, planned_state),
+        because: finding(&prepared, &claim, planned_state, draws),
         safe_from: search.as_ref().and_then(|search| search.safe_from),
         last_failing: search.as_ref().and_then(|search| search.last_failing),
         checked: search.as_ref().map(|search| search.checked.clone()),
@@ -72,7 +74,7 @@ pub(crate) fn assess(scenario: &Scenario, effort: Effort, work: &Work) -> Result
         method: method_facts(&prepared, sum, misses.as_ref(), search.as_ref(), start),
         distance: facts::distance(&spec, sum),
         tails: facts::tails(&prepared, Some(sum)),
-        cautions: cautions::cautions(&prepared, &claim),
+        cautions: cautions::cautions(&prepared, &claim, search.is_some()),
         claim,
         verdict,
         remedies,
@@ -140,11 +142,15 @@ fn claim_facts(
 }
 
 /// The finding in one sentence.
-fn finding(prepared: &Prepared, claim: &ClaimFacts, state: State) -> String {
+fn finding(prepared: &Prepared, claim: &ClaimFacts, state: State, draws: Option<u64>) -> String {
     if claim.actual.is_none() && is_studentized(&prepared.scenario.claim) {
         return without_figure(prepared.scenario, NoFigure::NoSpread);
     }
-    because(prepared.scenario, claim, state)
+    let sentence = because(prepared.scenario, claim, state);
+    match draws.and_then(|draws| more_draws(claim, draws)) {
+        Some(more) if state == State::Undecided => format!("{}; {more}.", sentence.trim_end_matches('.')),
+        _ => sentence,
+    }
 }
 
 /// The facts of every kind of summand, where there are several.
@@ -211,7 +217,7 @@ fn no_variance(
             berry_esseen: None,
         },
         tails: facts::tails(prepared, None),
-        cautions: cautions::cautions(prepared, &claim),
+        cautions: cautions::cautions(prepared, &claim, false),
         claim,
         verdict: Verdict {
             state: State::Fails,

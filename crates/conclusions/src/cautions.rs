@@ -1,13 +1,14 @@
 //! What a reader must keep in mind beside the numbers: a model is not the world.
 
 use crate::prepared::Prepared;
+use crate::remedies::asks_a_total;
 use crate::report::ClaimFacts;
 use crate::scenario::{Claim, Scenario, Sides, Source};
 use crate::words::numbers::{about_points, chance, percent};
 use gaussgap_simulation::law::LawSpec;
 
-/// Every caution for a scenario, the gravest first.
-pub(crate) fn cautions(prepared: &Prepared, claim: &ClaimFacts) -> Vec<String> {
+/// Every caution for a scenario, the gravest first; `searched` says whether *safe from* was looked for.
+pub(crate) fn cautions(prepared: &Prepared, claim: &ClaimFacts, searched: bool) -> Vec<String> {
     let scenario = prepared.scenario;
     let mut cautions = Vec::new();
     if concerns_safety(scenario) {
@@ -34,6 +35,13 @@ pub(crate) fn cautions(prepared: &Prepared, claim: &ClaimFacts) -> Vec<String> {
         );
     }
     cautions.extend(lopsided(scenario, claim));
+    if searched && asks_a_total(prepared) {
+        cautions.push(
+            "Here safe-from compares other plans, not better ones: the total changes with n while the stated value \
+             stays, so from some n on both chances are all but 0 or 1 and agree for that reason alone."
+                .to_owned(),
+        );
+    }
     if uses_data(scenario) {
         cautions.push(
             "The law is a pilot file: values rarer than about one in its number of rows are missing from it, and the \

@@ -1,16 +1,15 @@
 //! The distance over n: computed, bounded and predicted, on a logarithmic grid.
 
 use crate::bounds::{berry_esseen, leading_term};
-
+use crate::cost;
 use crate::prepared::Prepared;
 use crate::report::Growth;
 use gaussgap_simulation::sum::{Method, SumError, build_exact};
 use gaussgap_simulation::work::{Cancelled, Work};
 use rayon::prelude::*;
-use std::time::{Duration, Instant};
 
-/// After this long, no further n is started: the curve then has fewer points.
-const ALLOWED: Duration = Duration::from_secs(3);
+/// Units of work for the whole curve (see [`cost`]); where they do not suffice it has fewer points.
+const ALLOWED: f64 = 6000.0;
 
 /// Values of n per factor of ten.
 const PER_DECADE: f64 = 10.0;
@@ -42,21 +41,21 @@ pub(crate) fn growth(prepared: &Prepared, work: &Work) -> Result<Growth, Cancell
         .into_iter()
         .filter(|n| *n >= prepared.smallest_n())
         .collect::<Vec<_>>();
-    let start = Instant::now();
-    let mut rows = spread_out(n, prepared.total())
+    let mut spent = 0.0;
+    let affordable = spread_out(n, prepared.total()).into_iter().filter(|n| {
+        let Some(counts) = prepared.counts_at(*n) else { return false };
+        spent += cost::of_sum(&prepared.sum_spec(&counts));
+        spent <= ALLOWED || *n == prepared.total()
+    });
+    let mut rows = affordable
+        .collect::<Vec<_>>()
         .into_par_iter()
         .with_max_len(1)
         .map(|n| {
             work.check()?;
-            if start.elapsed() > ALLOWED {
-                return Ok(None);
-            }
-            row(prepared, n, work).map(Some)
+            row(prepared, n, work)
         })
-        .collect::<Result<Vec<_>, Cancelled>>()?
-        .into_iter()
-        .flatten()
-        .collect::<Vec<_>>();
+        .collect::<Result<Vec<_>, Cancelled>>()?;
     rows.sort_by_key(|row| row.n);
     let mut growth = Growth::default();
     for row in rows {

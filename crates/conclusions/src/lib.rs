@@ -4,6 +4,7 @@ mod assess;
 mod bounds;
 mod cautions;
 mod claims;
+mod cost;
 mod facts;
 mod figures;
 mod growth;

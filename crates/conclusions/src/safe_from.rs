@@ -5,13 +5,14 @@
 //! failing n there, and then checks every n above it from the top down, in parallel, until one fails. Where the
 //! Berry–Esseen bound alone proves that the claim holds from some n on, these n count as checked.
 //!
-//! Where the measured cost of that would exceed the time allowed, a finer grid and a bisection replace it; then
-//! `every_n` is false and the n that were looked at are listed. Simulated claims are always searched that way, with
-//! the confidence spent over the whole search.
+//! Where the estimated cost of that exceeds the work allowed, a finer grid and a bisection replace it; then `every_n`
+//! is false and the n that were looked at are listed. Simulated claims are always searched that way, with the
+//! confidence spent over the whole search. No limit is one of time: the same scenario is searched at the same n on
+//! every machine, with any number of threads.
 
 use crate::bounds::berry_esseen;
 use crate::claims::{self, StudentizedBudget, evaluate_studentized, is_studentized, state};
-
+use crate::cost;
 use crate::prepared::Prepared;
 use crate::report::{Checked, State};
 use crate::scenario::{Claim, Sides, Source, Tolerance};
@@ -19,10 +20,9 @@ use gaussgap_simulation::figure::Basis;
 use gaussgap_simulation::sum::{Method, SumError, build_exact};
 use gaussgap_simulation::work::{Cancelled, Work};
 use rayon::prelude::*;
-use std::time::{Duration, Instant};
 
-/// Time the whole search may take.
-const ALLOWED: Duration = Duration::from_secs(4);
+/// Units of work the whole search may take (see [`cost`]).
+const ALLOWED: f64 = 6000.0;
 
 /// At most this many simulated evaluations; the confidence is divided among them.
 const MOST_SIMULATED: u64 = 24;
@@ -30,8 +30,11 @@ const MOST_SIMULATED: u64 = 24;
 /// Share of the allowed probability of error spent on the search.
 const SEARCH_SHARE: f64 = 0.1;
 
-/// Simulated summands of one evaluation.
-const SUMMANDS: u64 = 200_000_000;
+/// Simulated summands of the whole search.
+const SUMMANDS: u64 = 320_000_000;
+
+/// Simulated samples that show nothing but whether a claim is enumerated exactly.
+const PROBE: u64 = 1;
 
 /// What the search found.
 #[derive(Debug, Clone)]
@@ -51,69 +54,81 @@ struct Judged {
     holds: bool,
     /// By an exact route.
     exact: bool,
+    /// Simulated summands it took.
+    summands: u64,
 }
 
-/// Searches for *safe from* of the scenario's claim.
-pub(crate) fn search(prepared: &Prepared, work: &Work) -> Result<Found, Cancelled> {
-    let start = Instant::now();
-    let judge = |n: u64| judge(prepared, n, work);
+impl Judged {
+    /// No route reaches this n.
+    const UNREACHED: Self = Self { holds: false, exact: false, summands: 0 };
+
+    /// What an exact route says.
+    fn exactly(holds: bool) -> Self {
+        Self { holds, exact: true, summands: 0 }
+    }
+}
+
+/// Searches for *safe from* of the scenario's claim, whose state at the planned n is known.
+pub(crate) fn search(prepared: &Prepared, planned: State, work: &Work) -> Result<Found, Cancelled> {
+    let judge = |n: u64| judge(prepared, n, SUMMANDS / 4, work);
     let proven = proven_from(prepared);
     if is_studentized(&prepared.scenario.claim) {
         // Exactly enumerated at a middle n? Then every n can be checked like any exact claim.
         let middle = prepared.scenario.search.up_to.clamp(prepared.smallest_n(), 40);
-        if !judge(middle)?.exact {
-            return simulated(prepared, start, &judge);
+        if !self::judge(prepared, middle, PROBE, work)?.exact {
+            return simulated(prepared, planned, work);
         }
     }
-    every_n(prepared, proven, start, work, &judge)
+    every_n(prepared, proven, work, &judge)
 }
 
 /// The smallest n from which on P(|statistic − expectation| > ε) stays at or below δ, up to the search limit.
 pub(crate) fn needed_n(prepared: &Prepared, probability: f64, work: &Work) -> Result<Option<u64>, Cancelled> {
     let judge = |n: u64| {
         work.check()?;
-        let Some(counts) = prepared.counts_at(n) else { return Ok(Judged { holds: false, exact: true }) };
+        let Some(counts) = prepared.counts_at(n) else { return Ok(Judged::exactly(false)) };
         let spec = prepared.sum_spec(&counts);
         match build_exact(&spec, &Method::default(), work) {
             Ok(sum) => {
                 let actual = claims::evaluate(prepared, &counts, sum.as_ref()).actual;
                 let holds = actual.is_some_and(|actual| actual.value + actual.error <= probability);
-                Ok(Judged { holds, exact: true })
+                Ok(Judged::exactly(holds))
             }
             Err(SumError::Cancelled(cancelled)) => Err(cancelled),
-            Err(_) => Ok(Judged { holds: false, exact: false }),
+            Err(_) => Ok(Judged::UNREACHED),
         }
     };
-    let found = every_n(prepared, None, Instant::now(), work, &judge)?;
+    let found = every_n(prepared, None, work, &judge)?;
     Ok(found.safe_from.filter(|_| found.checked.every_n))
 }
 
-/// Judges the claim at one n.
-fn judge(prepared: &Prepared, n: u64, work: &Work) -> Result<Judged, Cancelled> {
+/// Judges the claim at one n, with at most so many simulated summands where it must be simulated.
+fn judge(prepared: &Prepared, n: u64, summands: u64, work: &Work) -> Result<Judged, Cancelled> {
     work.check()?;
-    let Some(counts) = prepared.counts_at(n) else { return Ok(Judged { holds: false, exact: true }) };
+    let Some(counts) = prepared.counts_at(n) else { return Ok(Judged::exactly(false)) };
     if is_studentized(&prepared.scenario.claim) {
         let budget = StudentizedBudget {
-            draws: prepared.scenario.method.draws.min((SUMMANDS / n.max(1)).max(2000)),
+            draws: prepared.scenario.method.draws.min((summands / n.max(1)).max(1)),
             share: SEARCH_SHARE / MOST_SIMULATED as f64,
             precision: 1.0,
         };
         return match evaluate_studentized(prepared, &prepared.laws, &counts, &budget, work) {
-            Ok((facts, _)) => Ok(Judged {
+            Ok((facts, misses)) => Ok(Judged {
                 holds: state(&facts) == State::Holds,
                 exact: facts.actual.is_none_or(|actual| actual.basis == Basis::Bound),
+                summands: misses.and_then(|misses| misses.draws).unwrap_or(0).saturating_mul(n),
             }),
             Err(SumError::Cancelled(cancelled)) => Err(cancelled),
-            Err(_) => Ok(Judged { holds: false, exact: false }),
+            Err(_) => Ok(Judged::UNREACHED),
         };
     }
     match build_exact(&prepared.sum_spec(&counts), &Method::default(), work) {
         Ok(sum) => {
             let facts = claims::evaluate(prepared, &counts, sum.as_ref());
-            Ok(Judged { holds: state(&facts) == State::Holds, exact: true })
+            Ok(Judged::exactly(state(&facts) == State::Holds))
         }
         Err(SumError::Cancelled(cancelled)) => Err(cancelled),
-        Err(_) => Ok(Judged { holds: false, exact: false }),
+        Err(_) => Ok(Judged::UNREACHED),
     }
 }
 
@@ -151,7 +166,6 @@ fn proven_from(prepared: &Prepared) -> Option<u64> {
 fn every_n(
     prepared: &Prepared,
     proven: Option<u64>,
-    start: Instant,
     work: &Work,
     judge: &(impl Fn(u64) -> Result<Judged, Cancelled> + Sync),
 ) -> Result<Found, Cancelled> {
@@ -168,26 +182,23 @@ fn every_n(
         return Ok(Found { safe_from: Some(low), last_failing: None, checked, how: proven_note });
     }
     let grid = coarse(low, high);
-    let timed = grid
+    let looked_at = grid
         .par_iter()
         .rev()
-        .map(|n| {
-            let started = Instant::now();
-            judge(*n).map(|judged| (*n, judged, started.elapsed().as_secs_f64()))
-        })
+        .map(|n| judge(*n).map(|judged| (*n, judged, units(prepared, *n))))
         .collect::<Result<Vec<_>, Cancelled>>()?;
-    if timed.iter().all(|(_, judged, _)| !judged.exact) {
+    if looked_at.iter().all(|(_, judged, _)| !judged.exact) {
         let checked = Checked { from: low, to: up_to, every_n: false, which: Some(Vec::new()) };
         let how = Some("no exact route reaches this sum, so safe-from was not searched".to_owned());
         return Ok(Found { safe_from: None, last_failing: None, checked, how });
     }
-    let failing = timed.iter().filter(|(_, judged, _)| !judged.holds).map(|(n, _, _)| *n).max();
+    let failing = looked_at.iter().filter(|(_, judged, _)| !judged.holds).map(|(n, _, _)| *n).max();
     let from = failing.map_or(low, |failing| failing + 1);
-    let cost = cost_of_every_n(&timed, from, high);
-    let left = ALLOWED.saturating_sub(start.elapsed()).as_secs_f64();
+    let cost = cost_of_every_n(&looked_at, from, high);
+    let left = ALLOWED - looked_at.iter().map(|(_, _, units)| units).sum::<f64>();
     if cost > left {
-        let finer = finer_grid(from, high, cost, left);
-        return thinned(low, up_to, failing, &timed, finer, proven_note, judge);
+        let finer = finer_grid(from, high, cost, left.max(0.0));
+        return thinned(low, up_to, failing, &looked_at, finer, proven_note, judge);
     }
     let last_failing = match last_failing_between(from, high, work, judge)? {
         Some(n) => Some(n),
@@ -219,21 +230,28 @@ fn coarse(low: u64, high: u64) -> Vec<u64> {
     grid
 }
 
-/// The time that checking every n in [from, high] would take, from the times of the coarse grid.
-fn cost_of_every_n(timed: &[(u64, Judged, f64)], from: u64, high: u64) -> f64 {
+/// The estimated cost of judging the claim at n. A studentized claim that is enumerated costs about ten units.
+fn units(prepared: &Prepared, n: u64) -> f64 {
+    if is_studentized(&prepared.scenario.claim) {
+        return 10.0;
+    }
+    prepared.counts_at(n).map_or(0.0, |counts| cost::of_sum(&prepared.sum_spec(&counts)))
+}
+
+/// The cost of checking every n in [from, high], from the costs at the coarse grid.
+fn cost_of_every_n(looked_at: &[(u64, Judged, f64)], from: u64, high: u64) -> f64 {
     if high < from {
         return 0.0;
     }
-    let threads = rayon::current_num_threads().max(1) as f64;
-    let mut inside = timed.iter().filter(|(n, _, _)| *n >= from).collect::<Vec<_>>();
+    let mut inside = looked_at.iter().filter(|(n, _, _)| *n >= from).collect::<Vec<_>>();
     inside.sort_by_key(|(n, _, _)| *n);
     let mut previous = from.saturating_sub(1);
     let mut total = 0.0;
-    for (n, _, seconds) in inside {
-        total += (n - previous) as f64 * seconds;
+    for (n, _, units) in inside {
+        total += (n - previous) as f64 * units;
         previous = *n;
     }
-    total / threads
+    total
 }
 
 /// The largest failing n in [from, high], checked from the top down in parallel blocks.
@@ -263,7 +281,7 @@ fn last_failing_between(
     Ok(None)
 }
 
-/// A grid of as many n as there is time for, evenly spaced in ln n.
+/// A grid of as many n as there is work left for, evenly spaced in ln n.
 fn finer_grid(from: u64, high: u64, cost: f64, left: f64) -> Vec<u64> {
     let every = (high - from + 1) as f64;
     let count = (every * (left / cost)).clamp(20.0, 1000.0) as u64;
@@ -281,7 +299,7 @@ fn thinned(
     low: u64,
     up_to: u64,
     failing: Option<u64>,
-    timed: &[(u64, Judged, f64)],
+    looked_at: &[(u64, Judged, f64)],
     finer: Vec<u64>,
     proven_note: Option<String>,
     judge: &(impl Fn(u64) -> Result<Judged, Cancelled> + Sync),
@@ -290,7 +308,7 @@ fn thinned(
         .par_iter()
         .map(|n| judge(*n).map(|judged| (*n, judged.holds)))
         .collect::<Result<Vec<_>, Cancelled>>()?;
-    let mut which = timed.iter().map(|(n, _, _)| *n).collect::<Vec<_>>();
+    let mut which = looked_at.iter().map(|(n, _, _)| *n).collect::<Vec<_>>();
     which.extend(&finer);
     let last = judged.iter().filter(|(_, holds)| !holds).map(|(n, _)| *n).max().max(failing);
     let mut last_failing = last;
@@ -328,17 +346,24 @@ fn simulated_reach(prepared: &Prepared) -> u64 {
     };
     let allowed = prepared.scenario.tolerance.allowed(nominal);
     let samples = (9.0 / allowed).powi(2) * missing * (1.0 - missing);
-    let affordable = (SUMMANDS as f64 / samples.max(1.0)) as u64;
+    let affordable = (SUMMANDS as f64 / 4.0 / samples.max(1.0)) as u64;
     affordable.max(prepared.total()).clamp(prepared.smallest_n(), up_to.max(prepared.smallest_n()))
 }
 
-/// The search for a simulated claim: a grid from the top down until one n is not shown to hold, then a bisection.
-fn simulated(
-    prepared: &Prepared,
-    start: Instant,
-    judge: &impl Fn(u64) -> Result<Judged, Cancelled>,
-) -> Result<Found, Cancelled> {
+/// The search for a simulated claim: a grid from the top down until one n is not shown to hold, then a bisection,
+/// while simulated summands are left.
+fn simulated(prepared: &Prepared, planned: State, work: &Work) -> Result<Found, Cancelled> {
     let low = prepared.smallest_n();
+    let mut left = SUMMANDS;
+    let mut holds_at = |n: u64| {
+        if n == prepared.total() {
+            return Ok((planned == State::Holds, true));
+        }
+        let judged = judge(prepared, n, (left / 2).max(SUMMANDS / 50), work)?;
+        left = left.saturating_sub(judged.summands);
+        Ok::<_, Cancelled>((judged.holds, left > SUMMANDS / 50))
+    };
+    let mut affordable = true;
     let up_to = simulated_reach(prepared);
     let mut which = Vec::new();
     let (mut safe_from, mut last_failing) = (None, None);
@@ -348,13 +373,19 @@ fn simulated(
         grid.push(n.round() as u64);
         n /= 2.0;
     }
-    let out_of_time = |which: &Vec<u64>| start.elapsed() > ALLOWED || which.len() as u64 >= MOST_SIMULATED;
+    if prepared.total() <= up_to {
+        grid.push(prepared.total());
+    }
+    grid.sort_unstable_by_key(|n| std::cmp::Reverse(*n));
+    grid.dedup();
     for n in grid {
-        if out_of_time(&which) {
+        if !affordable {
             break;
         }
         which.push(n);
-        if judge(n)?.holds {
+        let (holds, more) = holds_at(n)?;
+        affordable = more;
+        if holds {
             safe_from = Some(n);
         } else {
             last_failing = Some(n);
@@ -362,12 +393,14 @@ fn simulated(
         }
     }
     while let (Some(fails), Some(holds)) = (last_failing, safe_from) {
-        if holds - fails <= 1 + fails / 50 || out_of_time(&which) {
+        if holds - fails <= 1 + fails / 50 || !affordable || which.len() as u64 >= MOST_SIMULATED {
             break;
         }
         let middle = fails + (holds - fails) / 2;
         which.push(middle);
-        if judge(middle)?.holds { safe_from = Some(middle) } else { last_failing = Some(middle) }
+        let (holds, more) = holds_at(middle)?;
+        affordable = more;
+        if holds { safe_from = Some(middle) } else { last_failing = Some(middle) }
     }
     which.sort_unstable();
     let how = format!(

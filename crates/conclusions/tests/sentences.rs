@@ -95,6 +95,43 @@ fn findings_read_well() {
     insta::assert_snapshot!(page.join("\n"));
 }
 
+/// Every kind of claim, on every side and in every direction, in every state.
+#[test]
+fn every_claim_in_every_state_reads_well() {
+    let mut claims = vec![(Claim::Curve, 0.0)];
+    for sides in [Sides::Two, Sides::Lower, Sides::Upper] {
+        for spread in [Spread::Known, Spread::Estimated] {
+            claims.push((Claim::Interval { level: 0.95, sides, spread }, 0.95));
+            claims.push((Claim::Test { significance: 0.05, sides, spread, shift: None }, 0.05));
+            claims.push((Claim::Test { significance: 0.05, sides, spread, shift: Some(0.5) }, 0.8));
+        }
+    }
+    for direction in [Direction::AtMost, Direction::AtLeast] {
+        claims.push((Claim::Threshold { at: 55.0, direction }, 0.9));
+    }
+    claims.push((Claim::Quantile { p: 0.999 }, 3.09));
+    claims.push((Claim::Deviation { epsilon: 2.0, probability: None }, 0.1));
+    claims.push((Claim::Deviation { epsilon: 2.0, probability: Some(0.05) }, 0.1));
+    let mut page = Vec::new();
+    for (claim, nominal) in claims {
+        for (state, off) in [(State::Holds, 0.004), (State::Fails, 0.03), (State::Undecided, 0.01)] {
+            let estimated = claim.spread() == Some(Spread::Estimated);
+            let actual = nominal + off;
+            let figure =
+                if estimated { Figure::confidence(actual, 4e-4) } else { Figure::bound(actual, 1e-12) };
+            let two_sided = matches!(claim, Claim::Interval { sides: Sides::Two, .. });
+            let misses = two_sided.then_some([0.03 - off / 2.0, 0.02 - off / 2.0]);
+            let mut facts = facts(nominal, figure, 0.01, misses);
+            facts.normal_quantile = Some(48.0 + 4.9 * nominal);
+            facts.actual_quantile = Some(Figure { value: 48.0 + 4.9 * actual, ..figure });
+            let sentence = because(&scenario("boarding time", "s", 40, claim), &facts, state);
+            assert!(sentence.ends_with('.') && !sentence.contains(". "), "{sentence}");
+            page.push(sentence);
+        }
+    }
+    insta::assert_snapshot!(page.join("\n"));
+}
+
 #[test]
 fn plans_read_well() {
     let law = LawSpec::Exponential { mean: 2.0 };

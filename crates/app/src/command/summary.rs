@@ -1,6 +1,7 @@
 //! The text summary of one scenario on standard output.
 
 use gaussgap_conclusions::report::{Report, State};
+use gaussgap_conclusions::words::remedy_in_words;
 use gaussgap_pages::numbers;
 use std::path::Path;
 
@@ -39,9 +40,7 @@ pub fn summary(path: &Path, report: &Report) -> String {
     if report.verdict.state != State::Holds
         && let Some(remedy) = report.remedies.iter().find(|remedy| remedy.holds)
     {
-        let actual =
-            remedy.actual.map_or_else(String::new, |actual| format!(" ({})", numbers::figure(&actual)));
-        lines.push(format!("  What would hold: {}{actual}.", one_line(&remedy.name)));
+        lines.push(format!("  What would hold: {}.", one_line(&remedy_in_words(remedy))));
     }
     lines.extend(report.cautions.iter().map(|caution| format!("  Caution: {}", one_line(caution))));
     let mut text = lines.join("\n");

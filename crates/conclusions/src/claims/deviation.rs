@@ -5,7 +5,7 @@
 //! difference of means, as in the scenario.
 //!
 //! Example: 100 Bernoulli(1/2) values, ε = 0.1: e = 2, normal 0.0455, actual P(|S − 50| > 10) = 0.0352;
-//! Chebyshev 1/4, Hoeffding 2e⁻² = 0.2707.
+//! Chebyshev 0.25/(100·0.01) = 1/4, Hoeffding 2e^(−2·100·0.01) = 2e⁻² = 0.2707.
 
 use super::guarantees::{METHODS, Sizes, guarantee, normal_probability, smallest_n};
 use super::{at_rounded_z, compared};

@@ -5,6 +5,11 @@
 //! below the true value when T < −t and above it when T > t; a `lower` limit misses high, an `upper` limit misses
 //! low, as for known spread. A sample whose values are all equal has s = 0: its interval is a point, which misses
 //! unless it hits. A single observation has no s, hence no interval: the claim fails.
+//!
+//! Example: three Bernoulli(1/2) values, two-sided 95 %, t = 4.303. With one or two ones among three, x̄ is 1/3 or 2/3
+//! and s = 0.577, so that |T| = √3·(1/6)/0.577 = 0.5: covered. With none or three s = 0 and the point misses. So the
+//! interval covers with probability 6/8 = 0.75 and misses low and high with 1/8 = 0.125 each. The test rejects
+//! with probability 1/4.
 
 use super::interval::tail_probability;
 use super::noncentral::noncentral_above;
@@ -20,6 +25,9 @@ use gaussgap_simulation::special::student;
 use gaussgap_simulation::sum::SumError;
 use gaussgap_simulation::work::Work;
 
+/// Simulated summands after which a decided figure is sharp enough.
+const PLENTY: u64 = 160_000_000;
+
 /// How much a studentized figure may cost.
 #[derive(Debug, Clone, Copy)]
 pub(crate) struct StudentizedBudget {
@@ -27,7 +35,8 @@ pub(crate) struct StudentizedBudget {
     pub draws: u64,
     /// Share of the allowed probability of a wrong band.
     pub share: f64,
-    /// Draw on until the error is this share of what the tolerance allows (and the verdict is decided).
+    /// Draw on until the error is this share of what the tolerance allows, or [`PLENTY`] is spent, and the verdict is
+    /// decided.
     pub precision: f64,
 }
 
@@ -74,7 +83,9 @@ pub(crate) fn evaluate_studentized(
     let enough = |found: &Misses| {
         let facts = facts(found);
         let error = facts.actual.map_or(0.0, |actual| actual.error);
-        super::state(&facts) != State::Undecided && error <= budget.precision * facts.allowed
+        let spent = found.draws.unwrap_or(0).saturating_mul(counts.iter().sum());
+        super::state(&facts) != State::Undecided
+            && (error <= budget.precision * facts.allowed || spent >= PLENTY)
     };
     let found = misses(&request, &enough, work)?;
     Ok((facts(&found), Some(found)))

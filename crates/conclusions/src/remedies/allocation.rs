@@ -20,5 +20,5 @@ pub(super) fn remedy(prepared: &Prepared, work: &Work) -> Result<Option<Remedy>,
     }
     let Some(facts) = claim_with(prepared, &prepared.laws, &balanced, work)? else { return Ok(None) };
     let name = format!("split evenly: {} and {}", whole(balanced[0]), whole(balanced[1]));
-    Ok(Some(from_facts(name, &facts, "the same total; skewness of like groups cancels".to_owned())))
+    Ok(Some(from_facts(prepared, name, &facts, "the same total; the skewnesses of like groups cancel")))
 }

@@ -7,7 +7,7 @@ use crate::figures::{NEVER, complement};
 use crate::prepared::Prepared;
 use crate::report::{ClaimFacts, Remedy};
 use crate::scenario::{Claim, Sides};
-use crate::words::numbers::number;
+use crate::words::numbers::number_to;
 use gaussgap_simulation::figure::Figure;
 use gaussgap_simulation::sum::StandardizedSum;
 
@@ -37,9 +37,21 @@ pub(super) fn remedies(prepared: &Prepared, sum: &dyn StandardizedSum, claim: &C
         if is_test { complement(inside) } else { inside }
     };
     let row = |name: &str, low: f64, high: f64, note: &str| {
-        let limits =
-            format!("{note}: limits at {} and {} instead of ± {}", number(low), number(high), number(c));
-        near(name, actual(low, high), claim.nominal, claim.allowed, limits)
+        let note = match (sides, is_test) {
+            (Sides::Two, _) => {
+                let [low, high, c] = told_apart(low, high, c);
+                format!("{note}: limits at {low} and {high} standard deviations instead of ± {c}")
+            }
+            (Sides::Upper, true) | (Sides::Lower, false) => {
+                let [_, high, c] = told_apart(high, high, c);
+                format!("{note}: a limit at {high} standard deviations instead of {c}")
+            }
+            (Sides::Lower, true) | (Sides::Upper, false) => {
+                let [low, _, c] = told_apart(low, low, c);
+                format!("{note}: a limit at {low} standard deviations instead of -{c}")
+            }
+        };
+        near(prepared, name, actual(low, high), claim, &note)
     };
     let mut rows = Vec::new();
     if let Some(span) = sum.lattice_span() {
@@ -59,4 +71,13 @@ pub(super) fn remedies(prepared: &Prepared, sum: &dyn StandardizedSum, claim: &C
         rows.push(row("exact critical values of this law", low, high, "its own quantiles"));
     }
     rows
+}
+
+/// Limits and the normal critical value, with as many digits as tell each limit from it.
+fn told_apart(low: f64, high: f64, c: f64) -> [String; 3] {
+    let texts = |digits| [number_to(low, digits), number_to(high, digits), number_to(c, digits)];
+    (4..=8)
+        .map(texts)
+        .find(|[low, high, c]| low.trim_start_matches('-') != c && high.trim_start_matches('-') != c)
+        .unwrap_or_else(|| texts(4))
 }

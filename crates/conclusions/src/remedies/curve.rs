@@ -1,9 +1,9 @@
 //! The whole curve: what distance is left with an expansion, or with the exact law.
 
-use super::near;
 use crate::bounds::{Shape, edgeworth, edgeworth_slope};
 use crate::prepared::Prepared;
 use crate::report::Remedy;
+use crate::words::numbers::about_points;
 use gaussgap_simulation::figure::{Basis, Figure};
 use gaussgap_simulation::sum::StandardizedSum;
 
@@ -20,16 +20,29 @@ pub(super) fn remedies(prepared: &Prepared, sum: &dyn StandardizedSum) -> Vec<Re
     let moments = sum.moments();
     if let (Some(skewness), Some(excess_kurtosis)) = (moments.skewness, moments.excess_kurtosis) {
         let left = largest_gap(sum, Shape { skewness, excess_kurtosis }, (allowed / 20.0).clamp(1e-4, 1e-2));
-        let steps = if sum.lattice_span().is_some() { "; the steps of the law remain" } else { "" };
-        let note = format!("the largest gap that is left, both sides of every step{steps}");
-        rows.push(near("Edgeworth expansion, two terms", left, 0.0, allowed, note));
+        let steps = if sum.lattice_span().is_some() { ", because the steps of the law remain" } else { "" };
+        let note = format!(
+            "leaves a gap of at most {} of probability{steps}",
+            about_points(left.value + left.error)
+        );
+        rows.push(row("Edgeworth expansion, two terms", left, allowed, note));
     }
     let error = sum.kolmogorov().kolmogorov;
     let left = Figure { value: 0.0, ..error };
     let name = if error.basis == Basis::Bound { "use the exact law" } else { "use the simulated law" };
-    let note = "the curve of this law itself; export it as columns".to_owned();
-    rows.push(near(name, left, 0.0, allowed, note));
+    let gap = if error.basis == Basis::Bound {
+        "no gap is left".to_owned()
+    } else {
+        format!("leaves a gap of at most {} of probability", about_points(error.error))
+    };
+    let note = format!("{gap}; the curve of this law itself can be exported as columns");
+    rows.push(row(name, left, allowed, note));
     rows
+}
+
+/// A row whose figure is the gap that is left.
+fn row(name: &str, left: Figure, allowed: f64, note: String) -> Remedy {
+    Remedy { name: name.to_owned(), actual: Some(left), holds: left.value + left.error <= allowed, note }
 }
 
 /// sup |P(Z ≤ z) − E(z)| with E the two-term expansion.

@@ -1,6 +1,5 @@
 //! Claims about one number (threshold, deviation, quantile): better approximations, and the exact number.
 
-use super::near;
 use crate::bounds::{Shape, cornish_fisher, edgeworth, edgeworth_on_lattice, saddlepoint_above};
 use crate::claims::scale_of;
 use crate::prepared::{Prepared, Scale};
@@ -117,7 +116,7 @@ fn probabilities(
     rows.push(exact_row(
         actual,
         format!(
-            "{}; nothing is approximated",
+            "gives {}; nothing is approximated",
             chance(actual.value, percent_decimals(0.001, actual.error, 0.001))
         ),
         prepared.scenario.tolerance.allowed(actual.value),
@@ -131,6 +130,12 @@ fn row(prepared: &Prepared, name: &str, value: f64, actual: Figure) -> Remedy {
     let decimals = percent_decimals(difference, actual.error, prepared.scenario.tolerance.allowed(value));
     let note = format!("gives {}, off by {}", chance(value, decimals), about_points(difference.abs()));
     near(name, actual, value, prepared.scenario.tolerance.allowed(value), note)
+}
+
+/// A row that holds where the true number is near the approximate one.
+fn near(name: &str, actual: Figure, value: f64, allowed: f64, note: String) -> Remedy {
+    let holds = (actual.value - value).abs() + actual.error <= allowed;
+    Remedy { name: name.to_owned(), actual: Some(actual), holds, note }
 }
 
 /// The exact number itself: holds where its own error is within the tolerance.
@@ -158,7 +163,7 @@ fn quantiles(
         let note = format!("gives {}, off by {off} standard deviations", in_units(w));
         rows.push(near("Cornish–Fisher expansion, two terms", actual, w, claim.allowed, note));
     }
-    let note = format!("{}; nothing is approximated", in_units(actual.value));
+    let note = format!("gives {}; nothing is approximated", in_units(actual.value));
     rows.push(exact_row(actual, note, claim.allowed));
     rows
 }

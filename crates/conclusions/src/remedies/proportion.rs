@@ -125,7 +125,7 @@ pub(super) fn remedies(prepared: &Prepared, claim: &ClaimFacts) -> Vec<Remedy> {
         .iter()
         .map(|method| {
             let (low, high) = misses(&case, method, sides);
-            near(method.name, covered(low, high), claim.nominal, claim.allowed, method.note.to_owned())
+            near(prepared, method.name, covered(low, high), claim, method.note)
         })
         .collect()
 }

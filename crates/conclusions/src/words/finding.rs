@@ -1,7 +1,7 @@
 //! The finding: the verdict in one sentence that names the use, the size, and what is wrong.
 
 use super::nouns::{plural, singular, size, statistic, target, text_with_unit, with_unit};
-use super::numbers::{chance, exact, number_to, percent, percent_decimals, points, times};
+use super::numbers::{about_points, chance, exact, number_to, percent, percent_decimals, points, times};
 use super::plan::tolerance;
 use crate::report::{ClaimFacts, State};
 use crate::scenario::{Claim, Direction, Scenario, Sides, Source, Statistic};
@@ -17,7 +17,7 @@ pub enum NoFigure {
 }
 
 /// The verdict as one sentence: "Not safe at n = 40: the 95 % interval really covers 92.1 % (± 0.02 points) and
-/// misses high five times as often as low."
+/// misses high (lies above the true mean) five times as often as low."
 pub fn because(scenario: &Scenario, facts: &ClaimFacts, state: State) -> String {
     let opening = match state {
         State::Holds => "Safe",
@@ -37,6 +37,65 @@ pub fn because(scenario: &Scenario, facts: &ClaimFacts, state: State) -> String 
         Claim::Deviation { epsilon, .. } => view.deviation(epsilon),
     };
     format!("{opening} at {}: {clause}.", size(scenario))
+}
+
+/// What a changed plan or a corrected method gives, as a clause: `the interval then covers 94.7 % (± 0.5 points)`.
+/// Nothing for the whole curve without a figure.
+pub(crate) fn outcome(scenario: &Scenario, facts: &ClaimFacts, state: State) -> Option<String> {
+    let view = View { scenario, facts, state, actual: facts.actual? };
+    let (chance, often) = (view.actual_chance(), view.how_often());
+    let clause = match scenario.claim {
+        Claim::Curve => format!(
+            "the largest gap is then {} of probability{}",
+            about_points(view.actual.value),
+            view.error_words(1)
+        ),
+        Claim::Interval { sides: Sides::Two, .. } => format!("the interval then covers {chance}"),
+        Claim::Interval { .. } => format!("the limit then keeps its promise {often}"),
+        Claim::Test { shift: None, .. } => format!("the test then raises a false alarm {often}"),
+        Claim::Test { .. } => format!("the test then detects the planned shift {often}"),
+        Claim::Threshold { .. } | Claim::Deviation { .. } => {
+            format!("the chance itself is then {chance} and the normal curve gives {}", view.normal_chance())
+        }
+        Claim::Quantile { p } => format!(
+            "the {} quantile is then at {} standard deviations and the normal curve gives {}",
+            percent(p),
+            number_to(view.actual.value, 4),
+            number_to(facts.nominal, 4)
+        ),
+    };
+    let doubt = if state == State::Undecided { ", too uncertain to tell whether that is enough" } else { "" };
+    Some(format!("{clause}{doubt}"))
+}
+
+/// How many more simulated samples would probably decide an undecided claim, as a clause.
+///
+/// The error falls with the root of the number of samples; it must become smaller than the distance from the value
+/// to the edge of the tolerance. Where that distance vanishes, no number of samples can be promised.
+pub(crate) fn more_draws(facts: &ClaimFacts, draws: u64) -> Option<String> {
+    let (actual, difference) = (facts.actual?, facts.difference?);
+    if actual.basis != Basis::Confidence || actual.error <= 0.0 {
+        return None;
+    }
+    let margin = (difference.abs() - facts.allowed).abs();
+    let needed = draws as f64 * (actual.error / margin).powi(2);
+    let more = needed - draws as f64;
+    Some(if margin > 0.0 && needed <= 1e12 {
+        format!("about {} more draws would probably tell", draws_in_words(more.max(1.0)))
+    } else {
+        "no practical number of draws would tell".to_owned()
+    })
+}
+
+/// `640`, `12,000`, `3.1 million`, two significant digits, rounded up.
+fn draws_in_words(draws: f64) -> String {
+    let unit = 10_f64.powf(draws.log10().floor() - 1.0).max(1.0);
+    let rounded = (draws / unit).ceil() * unit;
+    match rounded {
+        size if size < 1e6 => number_to(size, 6),
+        size if size < 1e9 => format!("{} million", number_to(size / 1e6, 3)),
+        size => format!("{} billion", number_to(size / 1e9, 3)),
+    }
 }
 
 /// The sentence where there is no figure to judge.
@@ -84,10 +143,21 @@ impl View<'_> {
         }
     }
 
+    /// How often something happens, with the error: `7.9 % of the time (± 0.02 points)`.
+    fn how_often(&self) -> String {
+        let decimals = self.decimals();
+        format!("{} of the time{}", chance(self.actual.value, decimals), self.error_words(decimals))
+    }
+
     /// The actual probability with its error.
     fn actual_chance(&self) -> String {
         let decimals = self.decimals();
         format!("{}{}", chance(self.actual.value, decimals), self.error_words(decimals))
+    }
+
+    /// The normal curve's probability, to the same digits.
+    fn normal_chance(&self) -> String {
+        chance(self.facts.nominal, self.decimals())
     }
 
     /// How an actual rate compares with the nominal one, as the end of a clause.
@@ -143,23 +213,27 @@ impl View<'_> {
                 let balance = self.balance();
                 let covers = format!("the {level} interval really covers {actual}");
                 match (self.state, balance) {
-                    (State::Fails, Some(balance)) => format!("{covers} and {balance}"),
+                    (State::Fails, Some(balance)) if self.actual.value < self.facts.nominal => {
+                        format!("{covers} and {balance}")
+                    }
                     (_, Some(balance)) => format!("{covers}{ending}, and {balance}"),
                     (_, None) => format!("{covers}{ending}"),
                 }
             }
             Sides::Lower => format!(
-                "the {level} lower limit really stays at or below {} {actual} of the time{ending}",
-                target(self.scenario)
+                "the {level} lower limit really stays at or below {} {}{ending}",
+                target(self.scenario),
+                self.how_often()
             ),
             Sides::Upper => format!(
-                "the {level} upper limit really stays at or above {} {actual} of the time{ending}",
-                target(self.scenario)
+                "the {level} upper limit really stays at or above {} {}{ending}",
+                target(self.scenario),
+                self.how_often()
             ),
         }
     }
 
-    /// `misses high five times as often as low`, where the two sides differ clearly.
+    /// `misses high (lies above the true mean) five times as often as low`, where the two sides differ clearly.
     fn balance(&self) -> Option<String> {
         let (low, high) = (self.facts.miss_low?, self.facts.miss_high?);
         let (many, few, more, less) =
@@ -168,6 +242,8 @@ impl View<'_> {
         if many.value - many.error <= 4.0 / 3.0 * (few.value + few.error) {
             return None;
         }
+        let place = if more == "low" { "below" } else { "above" };
+        let more = format!("{more} (lies {place} {})", target(self.scenario));
         if few.value <= 0.0 && few.error <= 1e-9 * many.value {
             return Some(format!("misses only {more}"));
         }
@@ -189,20 +265,16 @@ impl View<'_> {
         } else {
             "a"
         };
-        let actual = self.actual_chance();
+        let actual = self.how_often();
         match shift {
             None => {
                 let ending = self.against_allowed(&format!("promised {level}"));
-                format!(
-                    "{article} {level} {sides} test really raises a false alarm {actual} of the time{ending}"
-                )
+                format!("{article} {level} {sides} test really raises a false alarm {actual}{ending}")
             }
             Some(_) => {
                 let planned = chance(self.facts.nominal, self.decimals());
                 let ending = self.against_allowed(&format!("planned {planned}"));
-                format!(
-                    "{article} {level} {sides} test really detects the planned shift {actual} of the time{ending}"
-                )
+                format!("{article} {level} {sides} test really detects the planned shift {actual}{ending}")
             }
         }
     }

@@ -9,4 +9,4 @@ mod summary;
 
 pub use law::describe_law;
 pub use plan::plan_sentence;
-pub use summary::summary_paragraph;
+pub use summary::{remedy_in_words, summary_paragraph};

@@ -2,7 +2,7 @@
 
 use super::numbers::{about_points, whole};
 use super::plan::plan_sentence;
-use crate::report::{Report, State};
+use crate::report::{Remedy, Report, State};
 use crate::scenario::Scenario;
 use gaussgap_simulation::sum::Route;
 
@@ -14,7 +14,7 @@ pub fn summary_paragraph(report: &Report) -> String {
     if report.verdict.state != State::Holds
         && let Some(remedy) = report.remedies.iter().find(|remedy| remedy.holds)
     {
-        sentences.push(format!("What would hold: {}.", remedy.name));
+        sentences.push(format!("What would hold: {}.", remedy_in_words(remedy)));
     }
     if let Some(distance) = &report.distance.kolmogorov {
         let error = match report.method.route {
@@ -47,6 +47,15 @@ pub fn summary_paragraph(report: &Report) -> String {
         sentences.push(format!("Computed {how}."));
     }
     sentences.join(" ")
+}
+
+/// A remedy with what it gives: `take n = 325: 285 more than planned; the interval then covers 94.7 %`.
+pub fn remedy_in_words(remedy: &Remedy) -> String {
+    if remedy.note.trim().is_empty() {
+        remedy.name.clone()
+    } else {
+        format!("{}: {}", remedy.name, remedy.note.trim())
+    }
 }
 
 /// `Safe from n = 230 on (every n up to 10,000 was checked).`

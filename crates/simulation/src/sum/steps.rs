@@ -276,46 +276,65 @@ impl<C: Cumulative> Steps<C> {
     fn first_reaching(&self, p: f64, slack: f64) -> i64 {
         let q = 1.0 - p;
         let (first, last) = self.cumulative.range();
-        let (mut low, mut high) = (first - 1, last);
-        while high - low > 1 {
-            let middle = low + (high - low) / 2;
-            let reached = if p <= 0.5 {
-                let lower = self.below_index(middle);
+        self.first_index(first - 1, last, |k| {
+            if p <= 0.5 {
+                let lower = self.below_index(k);
                 lower.value + slack * (lower.error + 4.0 * f64::EPSILON * p) >= p
             } else {
-                let above = self.above_index(middle + 1);
+                let above = self.above_index(k + 1);
                 above.value - slack * (above.error + 4.0 * f64::EPSILON * q) <= q
-            };
-            if reached {
-                high = middle;
-            } else {
-                low = middle;
             }
-        }
-        high
+        })
     }
 
     /// Largest k with P(K ≥ k) ≥ p, likewise.
     fn last_reaching(&self, p: f64, slack: f64) -> i64 {
         let q = 1.0 - p;
         let (first, last) = self.cumulative.range();
-        let (mut low, mut high) = (first, last + 1);
-        while high - low > 1 {
-            let middle = low + (high - low) / 2;
-            let reached = if p <= 0.5 {
-                let upper = self.above_index(middle);
+        let beyond = self.first_index(first, last + 1, |k| {
+            !if p <= 0.5 {
+                let upper = self.above_index(k);
                 upper.value + slack * (upper.error + 4.0 * f64::EPSILON * p) >= p
             } else {
-                let below = self.below_index(middle - 1);
+                let below = self.below_index(k - 1);
                 below.value - slack * (below.error + 4.0 * f64::EPSILON * q) <= q
-            };
-            if reached {
-                low = middle;
+            }
+        });
+        beyond - 1
+    }
+
+    /// The first k in (low, high] with a property that all larger k have and `high` is known to have.
+    ///
+    /// Steps of doubling width lead from the mean to a bracket, which is then bisected: the far tails, which are
+    /// costly where they need transforms of their own, are looked at only where the answer lies in them.
+    fn first_index(&self, mut low: i64, mut high: i64, has: impl Fn(i64) -> bool) -> i64 {
+        let range = self.cumulative.range();
+        let mean = self.scale.locate(0.0, range).0;
+        let mut step = (self.scale.locate(1.0, range).0 - mean).max(1);
+        let mut k = mean;
+        let mut upwards = None;
+        while low < k && k < high {
+            let found = has(k);
+            if found {
+                high = k;
             } else {
+                low = k;
+            }
+            if *upwards.get_or_insert(!found) == found {
+                break;
+            }
+            k = if found { k.saturating_sub(step) } else { k.saturating_add(step) };
+            step = step.saturating_mul(2);
+        }
+        while high - low > 1 {
+            let middle = low + (high - low) / 2;
+            if has(middle) {
                 high = middle;
+            } else {
+                low = middle;
             }
         }
-        low
+        high
     }
 }
 
