@@ -92,12 +92,11 @@ pub fn plan(arguments: &AssessArguments, scenarios: &[PathBuf]) -> Result<Output
     let mut on_standard_output = None;
     for (format, path) in asked {
         let Some(path) = path else { continue };
-        if path.as_os_str() == "-" {
-            if let Some(other) = on_standard_output.replace(format.option()) {
-                let line =
-                    format!("gaussgap: {other} and {} cannot both go to standard output", format.option());
-                return Err(Refusal::bad_input(line));
-            }
+        if path.as_os_str() == "-"
+            && let Some(other) = on_standard_output.replace(format.option())
+        {
+            let line = format!("gaussgap: {other} and {} cannot both go to standard output", format.option());
+            return Err(Refusal::bad_input(line));
         }
         match destination(path) {
             Destination::StandardOutput | Destination::File if several && format == Format::Json => {

@@ -24,7 +24,7 @@ pub type Wake = Arc<dyn Fn() + Send + Sync>;
 
 /// A first answer that takes longer than this gives way to a newer request; a shorter one is finished, so that
 /// a drag shows every figure it passes instead of none.
-const PATIENCE: Duration = Duration::from_millis(120);
+const PATIENCE: Duration = Duration::from_millis(600);
 
 /// What is asked for.
 #[derive(Debug, Clone)]
