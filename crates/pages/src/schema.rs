@@ -146,14 +146,4 @@ mod tests {
         }
         assert_eq!(schema["properties"]["format"], json!({"const": "gaussgap-report/1"}));
     }
-
-    /// Writes the schemas to look at, or to give to a validator.
-    #[test]
-    #[ignore = "writes files for people to look at"]
-    fn look() {
-        let folder = std::env::temp_dir();
-        std::fs::write(folder.join("gaussgap-scenario.schema.json"), format!("{:#}", scenario_schema()))
-            .unwrap();
-        std::fs::write(folder.join("gaussgap-report.schema.json"), format!("{:#}", report_schema())).unwrap();
-    }
 }

@@ -48,6 +48,15 @@ pub fn run(builder: ViewportBuilder, make: MakeInterface) -> Result<(), String> 
     shell.failure.map_or(Ok(()), Err)
 }
 
+/// The size of the largest monitor in points; unbounded where none is known.
+fn largest_monitor(event_loop: &ActiveEventLoop) -> egui::Vec2 {
+    let sizes = event_loop.available_monitors().map(|monitor| {
+        let size = monitor.size().to_logical::<f32>(monitor.scale_factor());
+        egui::vec2(size.width, size.height)
+    });
+    sizes.reduce(egui::Vec2::max).filter(|size| size.min_elem() > 0.0).unwrap_or(egui::Vec2::INFINITY)
+}
+
 fn one_line(error: &dyn std::fmt::Display) -> String {
     error.to_string().lines().collect::<Vec<_>>().join(" ")
 }
@@ -78,7 +87,8 @@ impl Shell {
         let Some(make) = self.make.take() else { return Ok(()) };
         let context = &self.context;
         // Hidden until the first frame is painted, so that it never flashes empty.
-        let builder = self.builder.clone().with_visible(false);
+        let mut builder = self.builder.clone().with_visible(false);
+        builder.inner_size = builder.inner_size.map(|size| size.min(largest_monitor(event_loop)));
         let window = egui_winit::create_window(context, event_loop, &builder).map_err(|e| one_line(&e))?;
         egui_winit::apply_viewport_builder_to_window(context, &window, &builder);
         let window = Rc::new(window);

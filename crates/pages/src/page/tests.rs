@@ -253,20 +253,3 @@ fn the_picture_has_text_and_lines() {
         assert!((0.02..0.7).contains(&share), "\"{}\" covers {share} of its room", text.text);
     }
 }
-
-/// Writes the pages to look at: `cargo test -p gaussgap-pages --lib -- --ignored look`.
-#[test]
-#[ignore = "writes pictures for people to look at"]
-fn look() {
-    let folder = std::env::temp_dir().join("gaussgap-pages");
-    std::fs::create_dir_all(&folder).unwrap();
-    for size in SIZES {
-        for dark in [false, true] {
-            let style = PageStyle { size, dark, scale: 1.0 };
-            let start = std::time::Instant::now();
-            let png = to_png(&fixture::exponential(), &style);
-            println!("{size:?} {:?}", start.elapsed());
-            std::fs::write(folder.join(format!("{size:?}-{dark}.png")), png).unwrap();
-        }
-    }
-}
