@@ -30,7 +30,11 @@ pub fn run() -> ExitCode {
     match arguments.command {
         Some(Command::Assess(request)) => assess::run(&request).into(),
         Some(Command::Schema { document }) => print_schema(document).into(),
-        Some(Command::Open { scenario, renderer }) => open_window(Some(scenario), renderer).into(),
+        Some(Command::Open { scenario, renderer }) => {
+            // The option may stand before or after `open`.
+            let renderer = if renderer == Renderer::Auto { arguments.renderer } else { renderer };
+            open_window(Some(scenario), renderer).into()
+        }
         None => open_window(None, arguments.renderer).into(),
     }
 }
